@@ -1,0 +1,1 @@
+"""Longer documentation, shipped with the package."""

@@ -1,0 +1,1 @@
+"""What is read: clocks, counters, memory."""

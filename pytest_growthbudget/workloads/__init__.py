@@ -1,0 +1,1 @@
+"""What the measured code is fed."""
