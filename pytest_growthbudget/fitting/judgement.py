@@ -1,0 +1,81 @@
+"""What a judged budget is known by: frozen records of plain numbers and text, without numpy, pytest or scipy."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal
+
+VerdictName = Literal["within", "exceeded", "undecided", "unmeasured"]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Interval:
+    """An estimate and the ends of its interval, at the confidence that the judgement names."""
+
+    estimate: float
+    low: float
+    high: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class SizeRow:
+    """What was read at one size: `cost` is the lower quartile of `readings` readings, in the meter's unit."""
+
+    size: int
+    cost: float
+    readings: int
+    footprint: float = 0.0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class ForecastRow:
+    """The cost expected at a size that was not run, and what the budget would allow there."""
+
+    size: int
+    cost: Interval
+    allowed: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Finding:
+    """What a decision rule returns: the verdict over the sizes measured, and why.
+
+    `excess`: δ in cost ~ growth(n) · n^δ. `exponent`: the measured cost's own exponent over the same sizes.
+    `bends_at`: first size from which the cost runs ahead of the budget (exceeded only). `confirmed`: whether a
+    second, independent set of readings agreed (None: none was needed). `stage`: "A", "B" or "C".
+    `resolution`: the smallest excess that this run could have told from zero.
+    """
+
+    verdict: VerdictName
+    reason: str
+    excess: Interval | None = None
+    exponent: Interval | None = None
+    resolution: float | None = None
+    nearest: str | None = None
+    sizes: tuple[SizeRow, ...] = ()
+    forecast: tuple[ForecastRow, ...] = ()
+    bends_at: int | None = None
+    confirmed: bool | None = None
+    stage: str = ""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Judgement(Finding):
+    """A finding with the budget it was held to.
+
+    `bound`: the promise as written; `theta`: its growth; `steps`: the derivation. `slack`, `confidence`: what the
+    decision used. `seconds`: wall time of the whole measurement. `notes`: what distorted the readings, one
+    sentence each.
+    """
+
+    bound: str
+    theta: str
+    meter: str = "cpu_time"
+    unit: str = "ns"
+    slack: float = 0.15
+    confidence: float = 0.95
+    theorem: str = ""
+    steps: tuple[str, ...] = ()
+    seconds: float = 0.0
+    seed: int = 0
+    notes: tuple[str, ...] = ()
