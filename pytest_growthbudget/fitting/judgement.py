@@ -65,7 +65,7 @@ class Judgement(Finding):
 
     `bound`: the promise as written; `theta`: its growth; `steps`: the derivation. `slack`, `confidence`: what the
     decision used. `seconds`: wall time of the whole measurement. `notes`: what distorted the readings, one
-    sentence each.
+    sentence each. `allowed`: for each row of `sizes`, what the budget allows there, scaled to the smallest sizes.
     """
 
     bound: str
@@ -79,3 +79,4 @@ class Judgement(Finding):
     seconds: float = 0.0
     seed: int = 0
     notes: tuple[str, ...] = ()
+    allowed: tuple[float, ...] = ()

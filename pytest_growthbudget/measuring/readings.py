@@ -33,13 +33,14 @@ class Ladder:
     `costs[i]`: the smaller of the two calls made at `sizes[i]`. `footprints[i]`: bytes held by the workload and
     one call, interpolated in log-log between the sizes where it was measured; 0.0 where unknown.
     `ended`: why the climb went no higher: "" (it stopped where it was asked to), "largest", "time", "memory",
-    "failed" or "runaway".
+    "failed" or "runaway". `readable`: index of the first size whose readings are long enough for the clock.
     """
 
     sizes: tuple[int, ...]
     costs: tuple[float, ...]
     footprints: tuple[float, ...]
     ended: str = ""
+    readable: int = 0
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

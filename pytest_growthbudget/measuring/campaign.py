@@ -1,0 +1,364 @@
+"""The campaign: answers a decision rule's requests with readings, within the limits of the plan.
+
+It knows a callable `take(size, calls) -> Reading`, not pytest, and no clock but the `now` it is given: with a
+virtual clock a campaign is exact.
+"""
+
+from __future__ import annotations
+
+import bisect
+import math
+import random
+from collections.abc import Callable, Generator, Sequence
+from dataclasses import dataclass, field
+from typing import TypeVar
+
+from pytest_growthbudget.measuring.guards import Overrun
+from pytest_growthbudget.measuring.readings import (
+    Answer,
+    Climb,
+    Ladder,
+    Peek,
+    Peeked,
+    Reading,
+    Request,
+    Rounds,
+    Series,
+)
+from pytest_growthbudget.workloads import sizes as sizing
+
+Result = TypeVar("Result")
+
+MS = 1e6  # nanoseconds
+#: At most this factor in cost is foreseen for one step of a look-ahead.
+RISK_OF_PEEK = 30.0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Limits:
+    """What a campaign may spend, and how it reads. Times in nanoseconds, `memory` in bytes.
+
+    `floor`: the shortest reading that the clock can be trusted with. `repeatable`: the body may be called many
+    times in one reading. `clock`: the meter reads time, so dear calls are read less often; a deterministic meter
+    is read once a size and climbs until a reading takes `dear` of wall time.
+    """
+
+    time: float = 10_000 * MS
+    memory: float = float(1 << 30)
+    smallest: int | None = None
+    largest: int | None = None
+    exponential: bool = False
+    repeatable: bool = False
+    clock: bool = True
+    floor: float = 5_000.0
+    batch: float = 20_000.0
+    dear: float = 30 * MS
+    per_size: float = 8 * MS
+    fewest: int = 5
+    most: int = 25
+    once: int = 1
+
+
+@dataclass(slots=True)
+class _Rung:
+    size: int
+    cost: float
+    elapsed: float
+    calls: int
+
+
+@dataclass(slots=True)
+class Campaign:
+    """One budget's measurement. `run` may be called once.
+
+    `take(size, calls)` makes one reading; `footprint(size)` tells the bytes of workload and one call. Either may
+    raise `Overrun`: the sizes below are then judged.
+    """
+
+    take: Callable[[int, int], Reading]
+    footprint: Callable[[int], float]
+    now: Callable[[], int]
+    limits: Limits
+    seed: str
+    _rng: random.Random = field(init=False)
+    _rungs: list[_Rung] = field(init=False, default_factory=list)
+    _ideal: float = field(init=False, default=0.0)
+    _step: float = field(init=False, default=sizing.STEP)
+    _bytes: dict[int, float] = field(init=False, default_factory=dict)
+    _ended: str = field(init=False, default="")
+    _deadline: float = field(init=False, default=math.inf)
+    _refined: bool = field(init=False, default=False)
+
+    def __post_init__(self) -> None:
+        self._rng = random.Random(self.seed)
+
+    # ------------------------------------------------------------ the conversation with the rule
+
+    def run(self, rule: Generator[Request, Answer, Result]) -> Result:
+        """Answer the requests of `rule` until it returns its finding."""
+        self._deadline = self.now() + self.limits.time
+        try:
+            request = next(rule)
+            while True:
+                request = rule.send(self._answer(request))
+        except StopIteration as stop:
+            result: Result = stop.value
+            return result
+
+    def _answer(self, request: Request) -> Answer:
+        if isinstance(request, Climb):
+            return self._climb(request)
+        if isinstance(request, Rounds):
+            return self._rounds(request)
+        return self._peek(request)
+
+    @property
+    def left(self) -> float:
+        """Nanoseconds until the time limit."""
+        return self._deadline - self.now()
+
+    # ------------------------------------------------------------ the climb
+
+    def _climb(self, request: Climb) -> Ladder:
+        while not self._ended and self._wants_more(request):
+            self._step_up()
+        if self.limits.clock and not self._refined and self._rungs:
+            self._refine()
+        return self._ladder()
+
+    def _wants_more(self, request: Climb) -> bool:
+        if not self._rungs:
+            return True
+        top = self._rungs[-1]
+        if not self.limits.clock:
+            return top.elapsed < self.limits.dear or len(self._rungs) < request.at_least
+        if top.cost > request.cost:
+            return False
+        enough = sum(rung.cost * rung.calls >= self.limits.floor for rung in self._rungs)
+        return enough < request.at_least or self._bytes_at(top.size) <= request.footprint
+
+    def _step_up(self) -> None:
+        limits = self.limits
+        if not self._rungs:
+            self._ideal = sizing.first_size(
+                limits.smallest, self._rng.random(), exponential=limits.exponential
+            )
+        else:
+            self._ideal = sizing.next_size(
+                self._ideal,
+                [rung.size for rung in self._rungs],
+                [rung.cost for rung in self._rungs],
+                exponential=limits.exponential,
+                step=self._step,
+            )
+        size = round(self._ideal)
+        if limits.largest is not None and size >= limits.largest:
+            size = limits.largest
+            self._ended = "largest"
+            if self._rungs and self._rungs[-1].size >= size:
+                return
+        if not self._affordable(size):
+            return
+        self._add(size)
+
+    def _affordable(self, size: int) -> bool:
+        if not self._rungs:
+            return True
+        top = self._rungs[-1]
+        growth = self._trend(lambda rung: rung.elapsed)
+        predicted = top.elapsed * (size / top.size) ** growth
+        if 2 * predicted > self.left:
+            self._ended = "time"
+            return False
+        if self._bytes_at(size) > self.limits.memory:
+            self._ended = "memory"
+            return False
+        return True
+
+    def _trend(self, value: Callable[[_Rung], float]) -> float:
+        """The local exponent at the top of the ladder, plus what it has lately risen by."""
+        rungs = self._rungs[-5:]
+        if len(rungs) < 3:
+            return 2.0
+        logs = [(math.log(rung.size), math.log(max(value(rung), 1.0))) for rung in rungs]
+        slopes = [(b[1] - a[1]) / (b[0] - a[0]) for a, b in zip(logs, logs[2:], strict=False)]
+        return max(slopes[-1] + max(slopes[-1] - slopes[0], 0.0), 0.0)
+
+    def _add(self, size: int) -> None:
+        """Take two calls at `size`, the cheaper of which counts, and put it on the ladder."""
+        calls = self._calls_at(size)
+        try:
+            readings = [self.take(size, calls)]
+            if self.limits.repeatable and self._below_floor(readings[0]):
+                calls = self._calls_for(readings[0].cost)
+                readings = [self.take(size, calls)]
+            if 2 * readings[0].elapsed < self.left:
+                readings.append(self.take(size, calls))
+        except Overrun:
+            self._ended = "runaway"
+            return
+        best = min(readings, key=lambda reading: reading.cost)
+        rung = _Rung(size, best.cost, min(r.elapsed for r in readings), calls)
+        bisect.insort(self._rungs, rung, key=lambda item: item.size)
+        self._weigh(size)
+
+    def _below_floor(self, reading: Reading) -> bool:
+        return self.limits.clock and reading.cost * reading.calls < self.limits.floor
+
+    def _calls_for(self, cost: float) -> int:
+        return max(1, math.ceil(self.limits.batch / max(cost, 1.0)))
+
+    def _calls_at(self, size: int) -> int:
+        """Calls in one reading at `size`: as many as its nearest smaller neighbour needed, none of it where dear."""
+        if not self.limits.repeatable or not self.limits.clock:
+            return 1
+        below = [rung for rung in self._rungs if rung.size <= size]
+        if not below or below[-1].cost >= self.limits.batch:
+            return 1
+        return self._calls_for(below[-1].cost)
+
+    def _refine(self) -> None:
+        """Fill the ladder in where half octaves give fewer than 12 sizes up to a dear call."""
+        self._refined = True
+        if self.limits.exponential or self._ended == "runaway":
+            return
+        usable = [rung for rung in self._rungs if rung.cost * rung.calls >= self.limits.floor]
+        if len(usable) < 2:
+            return
+        growth = max(self._trend(lambda rung: rung.cost), 0.1)
+        more = math.log(max(self.limits.dear / usable[-1].cost, 1.0)) / (growth * math.log(self._step))
+        if len(usable) + (more if not self._ended else 0) >= 12:
+            return
+        self._step = math.sqrt(self._step)
+        known = [rung.size for rung in usable]
+        for size in sizing.between(known, len(known) - 1):
+            if self.left < 4 * max(rung.elapsed for rung in self._rungs):
+                return
+            self._add(size)
+
+    def _ladder(self) -> Ladder:
+        rungs = self._rungs
+        readable = next(
+            (i for i, rung in enumerate(rungs) if rung.cost * rung.calls >= self.limits.floor), len(rungs)
+        )
+        return Ladder(
+            sizes=tuple(rung.size for rung in rungs),
+            costs=tuple(rung.cost for rung in rungs),
+            footprints=tuple(self._bytes_at(rung.size) for rung in rungs),
+            ended=self._ended,
+            readable=readable if self.limits.clock else 0,
+        )
+
+    # ------------------------------------------------------------ footprints
+
+    def _weigh(self, size: int) -> None:
+        """Measure the footprint at `size` where the nearest known one is far below."""
+        top = self._rungs[-1]
+        if size != top.size or (self._bytes and size < 6 * max(self._bytes)):
+            return
+        if top.cost * top.calls < self.limits.floor and self._bytes:
+            return
+        # Tracing slows building down severalfold; what is that dear is extrapolated instead.
+        if self._bytes and 5 * top.elapsed > min(self.left, 400 * MS):
+            return
+        try:
+            self._bytes[size] = self.footprint(size)
+        except Overrun:
+            self._ended = "runaway"
+
+    def _bytes_at(self, size: int) -> float:
+        """Footprint at `size`, log-log through those measured; beyond them at most as a square."""
+        if not self._bytes:
+            return 0.0
+        known = sorted(self._bytes.items())
+        if len(known) == 1:
+            at, held = known[0]
+            return held * max(size / at, 1.0) if size > at else held
+        index = min(max(bisect.bisect_left([n for n, _ in known], size), 1), len(known) - 1)
+        (n1, b1), (n2, b2) = known[index - 1], known[index]
+        slope = math.log(b2 / b1) / math.log(n2 / n1)
+        if size > n2:
+            return b2 * (size / n2) ** min(max(slope, 0.0), 2.1)
+        if size < n1:
+            return b1
+        return b1 * (size / n1) ** slope
+
+    # ------------------------------------------------------------ rounds
+
+    def _rounds(self, request: Rounds) -> Series:
+        rungs = self._rungs[request.first : request.last]
+        wanted = [self._readings_of(rung, request) for rung in rungs]
+        costs: list[list[float]] = [[] for _ in rungs]
+        complete = True
+        for turn in range(max(wanted, default=0)):
+            order = [index for index, count in enumerate(wanted) if turn < count]
+            self._rng.shuffle(order)
+            # A round that cannot be finished would leave the dear sizes, the telling ones, without readings.
+            if turn and sum(rungs[i].elapsed for i in order) > self.left:
+                complete = False
+                break
+            try:
+                for index in order:
+                    costs[index].append(self.take(rungs[index].size, self._calls_at(rungs[index].size)).cost)
+            except Overrun:
+                complete = False
+                break
+        kept = [(rung.size, tuple(cost)) for rung, cost in zip(rungs, costs, strict=True) if cost]
+        return Series(
+            sizes=tuple(size for size, _ in kept), costs=tuple(cost for _, cost in kept), complete=complete
+        )
+
+    def _readings_of(self, rung: _Rung, request: Rounds) -> int:
+        if request.calls:
+            return request.calls
+        limits = self.limits
+        if not limits.clock:
+            return limits.once
+        return int(min(max(limits.per_size / max(rung.cost * rung.calls, 1.0), limits.fewest), limits.most))
+
+    # ------------------------------------------------------------ look-ahead
+
+    def _peek(self, request: Peek) -> Peeked | None:
+        """Two calls at one much larger size, reached by steps that each risk no more than `RISK` in cost."""
+        if self._ended in ("time", "runaway"):
+            return None
+        top = self._rungs[request.last - 1]
+        points = [(rung.size, rung.cost) for rung in self._rungs]
+        size = self._peek_size(request, points)
+        if size is None or size < request.beyond * top.size:
+            return None
+        at = points[-1][0]
+        elapsed = max(self._rungs[-1].elapsed, 1.0)
+        best: Reading | None = None
+        while best is None:
+            step = size
+            growth = max(math.log(points[-1][1] / points[-2][1]) / math.log(at / points[-2][0]), 0.5)
+            step = min(step, int(at * RISK_OF_PEEK ** (1 / growth)))
+            step = max(step, at + 1)
+            if 3 * elapsed * (step / at) ** max(self._trend(lambda rung: rung.elapsed), 1.0) > self.left:
+                return None
+            try:
+                first = self.take(step, 1)
+                if step >= size or first.cost > request.cost / 2:
+                    second = self.take(step, 1) if 2 * first.elapsed < self.left else first
+                    best = min(first, second, key=lambda reading: reading.cost)
+            except Overrun:
+                self._ended = "runaway"
+                return None
+            points.append((step, first.cost))
+            at, elapsed = step, first.elapsed
+        return Peeked(reading=best, footprint=self._bytes_at(best.size))
+
+    def _peek_size(self, request: Peek, points: Sequence[tuple[int, float]]) -> int | None:
+        if len(points) < 3:
+            return None
+        top_size, top_cost = points[-1]
+        growth = max(self._trend(lambda rung: rung.cost), 0.3)
+        size = top_size * (request.cost / max(top_cost, 1.0)) ** (1 / growth)
+        if self.limits.largest is not None:
+            size = min(size, self.limits.largest)
+        limit = min(request.footprint, self.limits.memory)
+        while size > top_size and self._bytes_at(int(size)) > limit:
+            size /= 1.1
+        return int(size) if size > top_size else None
+

@@ -1,0 +1,120 @@
+"""pytest's hooks, and nothing else. Imports pytest and the standard library only: a run without budgets pays nothing.
+
+PYTEST_DONT_REWRITE
+"""
+
+from __future__ import annotations
+
+from collections.abc import Generator
+from typing import TYPE_CHECKING, Any
+
+import pytest
+
+from pytest_growthbudget import settings as settings_module
+from pytest_growthbudget.workloads import collect, internals
+from pytest_growthbudget.workloads.fixtures import (
+    Shared,
+    metered,
+    problem_size,
+    shared_key,
+    tally,
+    workload_rng,
+)
+
+if TYPE_CHECKING:
+    from pytest_growthbudget.settings import Settings
+
+__all__ = ["metered", "problem_size", "tally", "workload_rng"]
+
+settings_key = pytest.StashKey["Settings"]()
+
+
+def pytest_addoption(parser: pytest.Parser) -> None:
+    # Help texts: a whole sentence in the imperative, the default in brackets at the end.
+    group = parser.getgroup("growthbudget", "growth budgets")
+    group.addoption(
+        "--growth",
+        choices=("on", "off"),
+        default="on",
+        help="Judge growth budgets, or run each budgeted test once as a plain test (on).",
+    )
+    group.addoption(
+        "--growth-seed", type=int, metavar="N", help="Seed the sizes and workloads with this number (1)."
+    )
+    group.addoption(
+        "--growth-time-limit",
+        type=float,
+        metavar="SECONDS",
+        help="Spend at most this long on the budgets of one test, each (10).",
+    )
+
+
+def pytest_configure(config: pytest.Config) -> None:
+    config.addinivalue_line("markers", settings_module.marker_line())
+    try:
+        settings = settings_module.resolve(config)
+    except settings_module.SettingsError as error:
+        raise pytest.UsageError(str(error)) from None
+    config.stash[settings_key] = settings
+    config.stash[shared_key] = Shared(settings.ordinary_size, settings.seed)
+    config.pluginmanager.register(Ledger(), "growthbudget-ledger")
+
+
+@pytest.hookimpl(trylast=True)
+def pytest_generate_tests(metafunc: pytest.Metafunc) -> None:
+    collect.give_sizes(metafunc, metafunc.config.stash[settings_key])
+
+
+@pytest.hookimpl(wrapper=True, tryfirst=True)
+def pytest_pycollect_makeitem(collector: pytest.Collector) -> Generator[None, Any, Any]:
+    made = yield
+    settings = collector.config.stash[settings_key]
+    if isinstance(made, list):
+        return [
+            collect.reported(item, settings) if isinstance(item, pytest.Function) else item for item in made
+        ]
+    if made is not None and settings.enabled and internals.is_test_case(made):
+        collect.refuse_test_case(made, settings)
+    return made
+
+
+def pytest_runtest_setup(item: pytest.Item) -> None:
+    if "workload_rng" in getattr(item, "fixturenames", ()):
+        item.config.stash[shared_key].reseed(item.nodeid, item.config.stash[settings_key].ordinary_size, 0)
+
+
+@pytest.hookimpl(wrapper=True)
+def pytest_runtest_makereport(item: pytest.Item) -> Generator[None, Any, Any]:
+    report = yield
+    if report.when == "call" and hasattr(item, "judgements"):
+        from pytest_growthbudget.reporting.failure import sections
+
+        report.growth_judgements = [{"test": item.nodeid, **judgement} for judgement in item.judgements]
+        report.sections.extend(sections(item.judgements, item.failed_at))
+    return report
+
+
+def pytest_report_header(config: pytest.Config) -> str | None:
+    settings = config.stash[settings_key]
+    if not settings.enabled:
+        return "growth budgets: off"
+    return None
+
+
+# ------------------------------------------------------------------ gathering, on the controller
+
+
+class Ledger:
+    """Gathers the judgements that the reports of all workers carry, and has them summed up at the end."""
+
+    def __init__(self) -> None:
+        self.judged: list[dict[str, Any]] = []
+
+    def pytest_runtest_logreport(self, report: pytest.TestReport) -> None:
+        self.judged.extend(getattr(report, "growth_judgements", ()))
+
+    def pytest_terminal_summary(self, terminalreporter: Any) -> None:
+        if self.judged:
+            from pytest_growthbudget.reporting.summary import write_summary
+
+            write_summary(terminalreporter, self.judged)

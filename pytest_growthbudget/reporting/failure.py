@@ -1,0 +1,178 @@
+"""What is said of one judged budget: a first line that stands alone, and the evidence under it."""
+
+from __future__ import annotations
+
+import textwrap
+from typing import Any
+
+from pytest_growthbudget.reporting import units
+
+WIDTH = 80
+BAR = 24
+
+
+def fails(judgement: dict[str, Any]) -> bool:
+    """Whether the test fails for this judgement (wire form), by the verdict and the policy for undecided ones."""
+    if judgement["verdict"] == "exceeded":
+        return True
+    return judgement["verdict"] in ("undecided", "unmeasured") and judgement["undecided"] == "fail"
+
+
+def power(exponent: float) -> str:
+    """A measured exponent as a growth: `n^1.97`."""
+    return f"n^{exponent:.2f}"
+
+
+def first_line(judgement: dict[str, Any]) -> str:
+    """The line that stands alone in a CI summary."""
+    verdict, meter, theta = judgement["verdict"], judgement["meter"], judgement["theta"]
+    if verdict == "exceeded":
+        return f"growth budget exceeded: {meter} grows as {_observed(judgement)} where {theta} is allowed"
+    if verdict == "within":
+        return f"growth budget kept: {meter} grows as {_observed(judgement)} where {theta} is allowed"
+    return f"growth budget {verdict}: {meter} against {theta}: {judgement['reason']}"
+
+
+def _observed(judgement: dict[str, Any]) -> str:
+    exponent = judgement["exponent"]
+    if exponent is None:
+        return judgement["nearest"] or "unknown"
+    if judgement["nearest"] and exponent["estimate"] > 4:
+        return str(judgement["nearest"])
+    return power(exponent["estimate"])
+
+
+def sections(judgements: list[dict[str, Any]], failed_at: str) -> list[tuple[str, str]]:
+    """Titled texts for the report of one test: a judgement each, or the sizes at which the test failed."""
+    titled = [("growth budget", describe(judgement)) for judgement in judgements]
+    if failed_at:
+        titled.append(("growth budget", f"the test failed at {failed_at}; no budget was judged"))
+    return titled
+
+
+def describe(judgement: dict[str, Any]) -> str:
+    """The whole report of one judgement in wire form, at most 80 columns wide, in ASCII where the bound is."""
+    parts = [_wrap(first_line(judgement)), _facts(judgement)]
+    if judgement["sizes"]:
+        parts.append(_table(judgement))
+    if judgement["forecast"] and judgement["verdict"] == "exceeded":
+        parts.append(_forecast(judgement))
+    closing = _closing(judgement)
+    if closing:
+        parts.append(closing)
+    return "\n\n".join(parts)
+
+
+def _wrap(text: str, indent: str = "") -> str:
+    return textwrap.fill(text, WIDTH, subsequent_indent=indent, break_on_hyphens=False)
+
+
+def _fact(name: str, text: str) -> str:
+    return textwrap.fill(
+        text, WIDTH, initial_indent=f"  {name:<11}", subsequent_indent=" " * 13, break_on_hyphens=False
+    )
+
+
+def _facts(judgement: dict[str, Any]) -> str:
+    lines = [_fact("declared", judgement["bound"])]
+    if judgement["theta"] != judgement["bound"]:
+        by = f" ({judgement['theorem']})" if judgement["theorem"] else ""
+        lines.append(_fact("derived", f"{judgement['theta']}{by}"))
+    exponent, excess = judgement["exponent"], judgement["excess"]
+    sizes = judgement["sizes"]
+    percent = f"{100 * judgement['confidence']:g} %"
+    if exponent is not None:
+        over = f" over n = {units.count(sizes[0]['size'])} to {units.count(sizes[-1]['size'])}" if sizes else ""
+        lines.append(
+            _fact(
+                "observed",
+                f"{power(exponent['estimate'])}, {percent} interval {exponent['low']:.2f} to "
+                f"{exponent['high']:.2f},{over}",
+            )
+        )
+    if excess is not None:
+        told = ""
+        if judgement["resolution"] is not None:
+            told = f"; this run could tell an excess of {judgement['resolution']:.2f}"
+        lines.append(
+            _fact(
+                "excess",
+                f"{excess['estimate']:.2f} ({excess['low']:.2f} to {excess['high']:.2f}) over the budget, "
+                f"slack {judgement['slack']:g}{told}",
+            )
+        )
+    if judgement["bends_at"] is not None:
+        lines.append(_fact("since", f"n = {units.count(judgement['bends_at'])}"))
+    if judgement["confirmed"]:
+        lines.append(_fact("confirmed", "by a second, independent set of readings"))
+    if judgement["reason"] and judgement["verdict"] in ("within", "exceeded"):
+        lines.append(_fact("because", judgement["reason"]))
+    return "\n".join(lines)
+
+
+def _table(judgement: dict[str, Any]) -> str:
+    rows = judgement["sizes"]
+    allowed = judgement["allowed"] or [None] * len(rows)
+    ratios = [row["cost"] / limit if limit else None for row, limit in zip(rows, allowed, strict=True)]
+    longest = max((ratio for ratio in ratios if ratio is not None), default=1.0)
+    slopes = _local_exponents(rows)
+    lines = [f"  {'n':>12}  {'cost':>10}  {'exponent':>8}  {'x allowed':>9}"]
+    for row, ratio, slope in zip(rows, ratios, slopes, strict=True):
+        bar = "#" * round(BAR * ratio / longest) if ratio is not None else ""
+        shown = f"{ratio:.3g}" if ratio is not None else ""
+        lines.append(
+            f"  {units.count(row['size']):>12}  {units.cost(row['cost'], judgement['unit']):>10}  "
+            f"{slope:>8}  {shown:>9}  {bar}".rstrip()
+        )
+    return "\n".join(lines)
+
+
+def _local_exponents(rows: list[dict[str, Any]]) -> list[str]:
+    """The exponent of the cost between each size and one about an octave below."""
+    import math
+
+    shown = []
+    for index, row in enumerate(rows):
+        below = [earlier for earlier in rows[:index] if 1.9 * earlier["size"] <= row["size"]]
+        if not below or below[-1]["cost"] <= 0 or row["cost"] <= 0:
+            shown.append("")
+            continue
+        slope = math.log(row["cost"] / below[-1]["cost"]) / math.log(row["size"] / below[-1]["size"])
+        shown.append(f"{slope:.2f}")
+    return shown
+
+
+def _forecast(judgement: dict[str, Any]) -> str:
+    unit = judgement["unit"]
+    lines = ["  forecast, at sizes that were not run", f"  {'n':>12}  {'expected':>10}  {'interval':>24}  budget allows"]
+    for row in judgement["forecast"]:
+        cost = row["cost"]
+        interval = f"{units.cost(cost['low'], unit)} to {units.cost(cost['high'], unit)}"
+        lines.append(
+            f"  {units.count(row['size']):>12}  {units.cost(cost['estimate'], unit):>10}  {interval:>24}  "
+            f"{units.cost(row['allowed'], unit)}"
+        )
+    return "\n".join(lines)
+
+
+def _closing(judgement: dict[str, Any]) -> str:
+    lines = []
+    if judgement["nearest"]:
+        lines.append(_fact("nearest", f"{judgement['nearest']}, the simple growth nearest to what was observed"))
+    if judgement["verdict"] == "exceeded":
+        lines.append(_fact("look at", _hint(judgement)))
+    lines.extend(_fact("note", note) for note in judgement["notes"])
+    lines.append(_fact("repeat", f"--growth-seed {judgement['seed']} (measured in {units.seconds(judgement['seconds'])})"))
+    return "\n".join(lines)
+
+
+def _hint(judgement: dict[str, Any]) -> str:
+    excess = judgement["excess"]["estimate"] if judgement["excess"] else 0.0
+    if excess > 3:
+        return "a step that branches into several of nearly its own size, or the same subproblem solved again"
+    if excess > 0.6:
+        return (
+            "a pass over the input inside a step that should not need one: a search in a list, a slice or a copy, "
+            "pop(0) or insert(0, ...), text built up by +, a loop inside the loop"
+        )
+    return "a step whose own cost grows with the input: a longer search, an uneven split, a copy of part of the input"

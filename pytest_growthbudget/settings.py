@@ -1,0 +1,396 @@
+"""Settings: marker before command line before pyproject.toml before default; every fault names its source.
+
+Nothing is read lazily: pyproject.toml is checked whole when pytest is configured, a marker when its test is
+collected.
+"""
+
+from __future__ import annotations
+
+import difflib
+import inspect
+import math
+import sys
+from collections.abc import Callable, Iterable, Mapping
+from dataclasses import dataclass, field, replace
+from fnmatch import fnmatchcase
+from typing import TYPE_CHECKING, Any
+
+if TYPE_CHECKING:
+    from pathlib import Path
+
+    import pytest
+
+    from pytest_growthbudget.bounds.budget import Budget
+
+MARKER = "growth_budget"
+POLICIES = ("warn", "fail", "pass")
+#: The slack that a meter's noise asks for; a meter of the user's own gets the first or the last of them.
+DEFAULT_SLACK = {"cpu_time": 0.15, "wall_time": 0.25, "steps": 0.05, "peak_memory": 0.05, "tally": 0.05}
+
+
+class SettingsError(Exception):
+    """A setting that cannot be used. The message is whole: source, what is wrong, what was expected."""
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class PlacedBudget:
+    """A budget that pyproject.toml puts on the tests whose node ids match the glob `test`."""
+
+    test: str
+    arguments: Mapping[str, Any]
+    source: str
+
+    def may_match(self, base: str) -> bool:
+        """Whether a test with the node id `base`, parameters left out, may match."""
+        return fnmatchcase(base, self.test) or fnmatchcase(base, self.test.partition("[")[0])
+
+    def matches(self, nodeid: str) -> bool:
+        # Brackets in a node id are parameters, not a set of characters.
+        return (
+            nodeid == self.test
+            or fnmatchcase(nodeid, self.test.replace("[", "[[]"))
+            or fnmatchcase(nodeid.partition("[")[0], self.test)
+        )
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Settings:
+    """What holds for the whole run. `time_limit` is in seconds a test; `slack` is by meter."""
+
+    enabled: bool = True
+    confidence: float = 0.95
+    time_limit: float = 10.0
+    undecided: str = "warn"
+    seed: int = 1
+    ordinary_size: int = 100
+    slack: Mapping[str, float] = field(default_factory=dict)
+    budgets: tuple[PlacedBudget, ...] = ()
+    from_command_line: frozenset[str] = frozenset()
+
+    def slack_of(self, meter: str, *, deterministic: bool = False) -> float:
+        kind = meter.partition(":")[0]
+        fallback = DEFAULT_SLACK["steps" if deterministic else "cpu_time"]
+        return self.slack.get(meter, self.slack.get(kind, DEFAULT_SLACK.get(kind, fallback)))
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Plan:
+    """One budget on one test, every setting resolved. `source` says where it was declared."""
+
+    budget: Budget
+    source: str
+    meter: str = "cpu_time"
+    vary: Mapping[str, str] = field(default_factory=dict)
+    smallest: int | None = None
+    largest: int | None = None
+    slack: float = 0.15
+    confidence: float = 0.95
+    time_limit: float = 10.0
+    undecided: str = "warn"
+    seed: int = 1
+
+    @property
+    def size_names(self) -> tuple[str, ...]:
+        return tuple(self.vary.values())
+
+
+# ------------------------------------------------------------------ checks of single values
+
+
+def nearest(name: str, known: Iterable[str]) -> str:
+    """A hint that names the nearest known name, or all of them."""
+    choices = sorted(known)
+    close = difflib.get_close_matches(name, choices, 1, 0.6)
+    return f"did you mean {close[0]!r}?" if close else "known: " + ", ".join(choices)
+
+
+def _number(low: float, high: float, what: str) -> Callable[[Any], float]:
+    def check(value: Any) -> float:
+        if (
+            isinstance(value, bool)
+            or not isinstance(value, (int, float))
+            or not math.isfinite(value)
+            or not low < value < high
+        ):
+            raise ValueError(what)
+        return float(value)
+
+    return check
+
+
+def _whole(low: int, what: str) -> Callable[[Any], int]:
+    def check(value: Any) -> int:
+        if isinstance(value, bool) or not isinstance(value, int) or value < low:
+            raise ValueError(what)
+        return value
+
+    return check
+
+
+def _policy(value: Any) -> str:
+    if value not in POLICIES:
+        raise ValueError("one of " + ", ".join(map(repr, POLICIES)))
+    return str(value)
+
+
+def _text(value: Any) -> str:
+    if not isinstance(value, str) or not value.strip():
+        raise ValueError("text")
+    return value
+
+
+def _vary(value: Any) -> dict[str, str]:
+    if (
+        not isinstance(value, Mapping)
+        or not value
+        or not all(isinstance(part, str) for pair in value.items() for part in pair)
+    ):
+        raise ValueError('a table of variable to fixture or argument name, such as {"V": "vertex_count"}')
+    return dict(value)
+
+
+_CHECKS: dict[str, Callable[[Any], Any]] = {
+    "confidence": _number(0.5, 1, "a number above 0.5 and below 1"),
+    "time_limit": _number(0, math.inf, "a positive number of seconds"),
+    "undecided": _policy,
+    "seed": _whole(0, "a whole number of at least 0"),
+    "ordinary_size": _whole(1, "a whole number of at least 1"),
+    "slack": _number(0, 10, "a positive exponent below 10"),
+    "meter": _text,
+    "vary": _vary,
+    "smallest": _whole(1, "a whole number of at least 1"),
+    "largest": _whole(2, "a whole number of at least 2"),
+}
+
+
+def _checked(name: str, value: Any, source: str) -> Any:
+    try:
+        return _CHECKS[name](value)
+    except ValueError as error:
+        raise SettingsError(f"{source}: {name} must be {error}; got {value!r}") from None
+
+
+# ------------------------------------------------------------------ pyproject.toml
+
+
+def read_pyproject(path: Path) -> Settings:
+    """The settings in the table `[tool.growthbudget]` of `path`; the defaults where there is none.
+
+    Raises `SettingsError` for an unknown key or a value of the wrong kind.
+    """
+    try:
+        raw = path.read_bytes()
+    except OSError:
+        return Settings()
+    if b"growthbudget" not in raw:
+        return Settings()
+    if sys.version_info >= (3, 11):
+        import tomllib
+    else:
+        import tomli as tomllib
+    try:
+        document = tomllib.loads(raw.decode())
+    except (UnicodeDecodeError, tomllib.TOMLDecodeError) as error:
+        raise SettingsError(f"{path.name}: {error}") from None
+    table = document.get("tool", {}).get("growthbudget", {})
+    return _settings(table, path.name)
+
+
+_TABLE_KEYS = ("confidence", "time_limit", "undecided", "seed", "ordinary_size", "slack", "budgets")
+
+
+def _settings(table: Any, file: str) -> Settings:
+    place = f"{file}, [tool.growthbudget]"
+    if not isinstance(table, Mapping):
+        raise SettingsError(f"{place}: expected a table")
+    values: dict[str, Any] = {}
+    for key, value in table.items():
+        if key not in _TABLE_KEYS:
+            raise SettingsError(f"{place}: unknown key {key!r}; {nearest(key, _TABLE_KEYS)}")
+        if key == "slack":
+            values[key] = _slack_table(value, f"{file}, [tool.growthbudget.slack]")
+        elif key == "budgets":
+            values[key] = _placed_budgets(value, file)
+        else:
+            values[key] = _checked(key, value, place)
+    return Settings(**values)
+
+
+def _slack_table(table: Any, place: str) -> dict[str, float]:
+    if not isinstance(table, Mapping):
+        raise SettingsError(f"{place}: expected a table of meter to slack, such as cpu_time = 0.2")
+    return {meter: _checked("slack", value, f"{place}, {meter}") for meter, value in table.items()}
+
+
+def _placed_budgets(entries: Any, file: str) -> tuple[PlacedBudget, ...]:
+    if not isinstance(entries, list) or not all(isinstance(entry, Mapping) for entry in entries):
+        raise SettingsError(f"{file}: budgets must be tables, each headed [[tool.growthbudget.budgets]]")
+    placed = []
+    for number, entry in enumerate(entries, 1):
+        source = f"{file}, [[tool.growthbudget.budgets]] number {number}"
+        if not isinstance(entry.get("test"), str):
+            raise SettingsError(f'{source}: needs test = "glob of node ids"')
+        arguments = {key: value for key, value in entry.items() if key != "test"}
+        unknown = [key for key in arguments if key not in marker_arguments()]
+        if unknown:
+            known = ("test", *marker_arguments())
+            raise SettingsError(f"{source}: unknown key {unknown[0]!r}; {nearest(unknown[0], known)}")
+        placed.append(PlacedBudget(test=entry["test"], arguments=arguments, source=source))
+        plan_of((), arguments, Settings(), source)
+    return tuple(placed)
+
+
+# ------------------------------------------------------------------ markers
+
+
+def growth_budget(
+    bound: Any = None,
+    *,
+    meter: str = "cpu_time",
+    vary: Mapping[str, str] | None = None,
+    smallest: int | None = None,
+    largest: int | None = None,
+    slack: float | None = None,
+    confidence: float | None = None,
+    time_limit: float | None = None,
+    undecided: str | None = None,
+) -> None:
+    """The signature of the marker; called by nobody."""
+
+
+_SIGNATURE = inspect.signature(growth_budget)
+
+
+def marker_arguments() -> tuple[str, ...]:
+    return tuple(_SIGNATURE.parameters)
+
+
+def marker_line() -> str:
+    """The line under which `pytest --markers` shows the marker."""
+    arguments = ", ".join(
+        str(parameter).partition(":")[0] + ("" if parameter.name == "bound" else "=None")
+        for parameter in _SIGNATURE.parameters.values()
+    ).replace("meter=None", "meter='cpu_time'")
+    star = arguments.replace("bound, ", "bound, *, ", 1)
+    return f"{MARKER}({star}): the cost of the test's body may grow no faster than the bound or recurrence."
+
+
+def plan_of(args: tuple[Any, ...], kwargs: Mapping[str, Any], settings: Settings, source: str) -> Plan:
+    """One marker, or one entry of pyproject.toml, with every setting resolved.
+
+    Raises `SettingsError` whose message names the source.
+    """
+    from pytest_growthbudget.bounds.budget import parse_budget
+    from pytest_growthbudget.bounds.language import BoundError
+
+    unknown = [key for key in kwargs if key not in _SIGNATURE.parameters]
+    if unknown:
+        hint = nearest(unknown[0], _SIGNATURE.parameters)
+        raise SettingsError(f"{source}: growth_budget has no argument {unknown[0]!r}; {hint}")
+    if len(args) > 1:
+        raise SettingsError(
+            f"{source}: growth_budget takes one bound; got {len(args)}: stack one marker a budget"
+        )
+    if args and "bound" in kwargs:
+        raise SettingsError(f"{source}: growth_budget got its bound twice")
+    bound = args[0] if args else kwargs.get("bound")
+    if bound is None:
+        raise SettingsError(f'{source}: growth_budget needs a bound, such as "n log n"')
+    if not isinstance(bound, str):
+        raise SettingsError(f"{source}: the bound must be text, such as \"n log n\"; got {bound!r}")
+    try:
+        budget = parse_budget(bound)
+    except BoundError as error:
+        raise SettingsError(f"{source}:\n{error}") from None
+
+    given = {
+        key: _checked(key, value, source)
+        for key, value in kwargs.items()
+        if key != "bound" and value is not None
+    }
+    meter = given.get("meter", "cpu_time")
+    smallest, largest = given.get("smallest"), given.get("largest")
+    if smallest is not None and largest is not None and largest < 2 * smallest:
+        raise SettingsError(
+            f"{source}: largest must be at least twice smallest; got smallest={smallest}, largest={largest}"
+        )
+    return Plan(
+        budget=budget,
+        source=source,
+        meter=meter,
+        vary=_variables(budget, given.get("vary"), source),
+        smallest=smallest,
+        largest=largest,
+        slack=given.get("slack", settings.slack_of(meter)),
+        confidence=given.get("confidence", settings.confidence),
+        time_limit=given.get("time_limit", settings.time_limit),
+        undecided=given.get("undecided", settings.undecided),
+        seed=settings.seed,
+    )
+
+
+def _variables(budget: Budget, vary: Mapping[str, str] | None, source: str) -> dict[str, str]:
+    variables = budget.variables or ("n",)
+    if vary is None:
+        if len(variables) > 1:
+            names = ", ".join(f'"{name}": "..."' for name in variables)
+            raise SettingsError(
+                f"{source}: the bound has the variables {', '.join(variables)}; say which fixture or argument "
+                f"gives each: vary={{{names}}}"
+            )
+        return {variables[0]: "problem_size"}
+    missing = [name for name in budget.variables if name not in vary]
+    if missing:
+        raise SettingsError(f"{source}: vary does not say what gives {missing[0]!r}")
+    surplus = [name for name in vary if name not in variables]
+    if surplus:
+        raise SettingsError(
+            f"{source}: vary names {surplus[0]!r}, which the bound does not; {nearest(surplus[0], variables)}"
+        )
+    if len(set(vary.values())) < len(vary):
+        raise SettingsError(f"{source}: vary gives two variables the same fixture")
+    return dict(vary)
+
+
+# ------------------------------------------------------------------ the budgets of one test
+
+
+def marks_apply(node: pytest.Item) -> bool:
+    """Whether a marker stands on the test, its class or its module."""
+    return node.get_closest_marker(MARKER) is not None
+
+
+def plans_for(item: pytest.Item, nodeid: str, settings: Settings) -> tuple[Plan, ...]:
+    """The plans of one test: its markers, the nearest first, then the entries of pyproject.toml that match.
+
+    A budget for a meter that a nearer one has judged already is left out. Raises `SettingsError`.
+    """
+    plans: dict[str, Plan] = {}
+    nodes: dict[str, pytest.Item | pytest.Collector] = {}
+    for node, mark in item.iter_markers_with_node(MARKER):
+        where = nodeid if node is item else f"{nodeid} (marker on {node.name})"
+        plan = plan_of(mark.args, mark.kwargs, settings, where)
+        if plan.meter not in plans:
+            plans[plan.meter], nodes[plan.meter] = plan, node
+        elif nodes[plan.meter] is node:
+            raise SettingsError(f"{where}: two budgets for the meter {plan.meter!r}; keep one")
+    for placed in settings.budgets:
+        if placed.matches(nodeid):
+            arguments = {k: v for k, v in placed.arguments.items() if k not in settings.from_command_line}
+            plan = plan_of((), arguments, settings, placed.source)
+            plans.setdefault(plan.meter, plan)
+    return tuple(plans.values())
+
+
+# ------------------------------------------------------------------ command line, and the whole
+
+
+def resolve(config: pytest.Config) -> Settings:
+    """The settings of the run: command line before pyproject.toml before default."""
+    settings = read_pyproject(config.rootpath / "pyproject.toml")
+    given: dict[str, Any] = {"enabled": config.getoption("--growth") == "on"}
+    for option, name in (("--growth-seed", "seed"), ("--growth-time-limit", "time_limit")):
+        value = config.getoption(option)
+        if value is not None:
+            given[name] = _checked(name, value, option)
+    return replace(settings, from_command_line=frozenset(given), **given)

@@ -1,0 +1,127 @@
+"""From a collected test function to the item that is reported: which tests carry a budget, and which are refused."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from typing import Any
+
+import pytest
+
+from pytest_growthbudget.settings import MARKER, Settings, SettingsError, marks_apply, plans_for
+from pytest_growthbudget.workloads import internals
+from pytest_growthbudget.workloads.repeat import GrowthItem
+
+
+def give_sizes(metafunc: pytest.Metafunc, settings: Settings) -> None:
+    """Reserve a hidden parameter for each size name of a test that carries a budget."""
+    names = [
+        name
+        for name in size_names(metafunc.definition, settings)
+        if name in metafunc.fixturenames
+        and (settings.enabled or name not in metafunc._arg2fixturedefs)
+    ]
+    if not names:
+        return
+    try:
+        metafunc.parametrize(
+            names,
+            [(settings.ordinary_size,) * len(names)],
+            ids=[internals.hide_id()],
+            scope="session",
+        )
+    except (ValueError, pytest.Collector.CollectError) as error:
+        if "duplicate" not in str(error):
+            raise
+        raise pytest.Collector.CollectError(
+            f"{metafunc.definition.nodeid}: {' or '.join(names)} is parametrized already; a growth budget sets "
+            "the sizes itself: take that parametrization away, or budget another size with vary=..."
+        ) from None
+
+
+def size_names(definition: pytest.Item, settings: Settings) -> tuple[str, ...]:
+    """The names that the budgets of a test function may vary, as far as they can be told before it is an item."""
+    varies: list[Any] = [mark.kwargs.get("vary") for mark in definition.iter_markers(MARKER)]
+    varies += [
+        placed.arguments.get("vary") for placed in settings.budgets if placed.may_match(definition.nodeid)
+    ]
+    names: dict[str, None] = {}
+    for vary in varies:
+        if isinstance(vary, dict):
+            names.update(dict.fromkeys(name for name in vary.values() if isinstance(name, str)))
+        else:
+            names["problem_size"] = None
+    return tuple(names)
+
+
+def reported(item: pytest.Function, settings: Settings) -> pytest.Item:
+    """The item that stands in pytest's collection for `item`.
+
+    Raises `pytest.Collector.CollectError`, whose text is whole, where the budget or the test cannot be used.
+    """
+    nodeid = internals.without_size_id(item.nodeid)
+    budgeted = marks_apply(item) or any(placed.matches(nodeid) for placed in settings.budgets)
+    if not budgeted or not settings.enabled:
+        internals.hide_size_id(item)
+        return item
+    try:
+        plans = plans_for(item, nodeid, settings)
+    except SettingsError as error:
+        raise pytest.Collector.CollectError(str(error)) from None
+    reason = refusal(item.obj)
+    if reason:
+        raise pytest.Collector.CollectError(f"{nodeid}: {reason}")
+    names = dict.fromkeys(name for plan in plans for name in plan.size_names)
+    unused = [name for name in names if name not in set(internals.names_of_fixtures(item))]
+    if unused:
+        raise pytest.Collector.CollectError(_no_size(nodeid, unused[0], item))
+    return GrowthItem.in_place_of(item, plans)
+
+
+def refusal(function: Any) -> str:
+    """Why the test function cannot carry a budget, and the way round; "" where it can."""
+    if internals.is_async(function):
+        return (
+            "a growth budget cannot stand on an async test yet; "
+            "call the coroutine in a plain test with asyncio.run(...)"
+        )
+    if getattr(function, "is_hypothesis_test", False):
+        return (
+            "a growth budget cannot stand on a @given test, whose body runs many examples a call; "
+            "put it on a plain test that builds its workload from problem_size"
+        )
+    return ""
+
+
+def refuse_test_case(collector: pytest.Collector, settings: Settings) -> None:
+    """Refuse budgets in a `unittest.TestCase`, which knows no fixtures in its methods."""
+    for name, method in _methods(getattr(collector, "obj", None)):
+        nodeid = f"{collector.nodeid}::{name}"
+        marked = any(mark.name == MARKER for mark in getattr(method, "pytestmark", ()))
+        if marked or marks_apply_above(collector) or any(p.matches(nodeid) for p in settings.budgets):
+            raise pytest.Collector.CollectError(
+                f"{nodeid}: a growth budget cannot stand on a method of a unittest.TestCase, which takes no "
+                "fixtures; write it as a plain test function or in a class without that base"
+            )
+
+
+def marks_apply_above(collector: pytest.Collector) -> bool:
+    return collector.get_closest_marker(MARKER) is not None
+
+
+def _methods(cls: Any) -> Iterable[tuple[str, Any]]:
+    return [(name, getattr(cls, name)) for name in dir(cls) if name.startswith("test")] if cls else []
+
+
+def _no_size(nodeid: str, name: str, item: pytest.Function) -> str:
+    asked = internals.direct_arguments(item)
+    where = (
+        f"give it to the fixture that builds the workload ({' or '.join(asked)})"
+        if asked
+        else "give it to the test, or to a fixture that builds its workload"
+    )
+    return (
+        f"{nodeid}: no fixture of this test asks for the size {name!r}, so its workload cannot grow; {where}:\n"
+        f"    @pytest.fixture\n"
+        f"    def {asked[0] if asked else 'workload'}({name}): ..."
+    )
+

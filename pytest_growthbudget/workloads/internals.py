@@ -1,0 +1,121 @@
+"""Every private name of pytest that the repetition of a test needs, in one place.
+
+Each function has a test of its own, which is run with every pytest version that the package supports.
+"""
+
+from __future__ import annotations
+
+import inspect
+from typing import TYPE_CHECKING, Any
+
+import pytest
+
+if TYPE_CHECKING:
+    from collections.abc import Iterable, Mapping
+
+#: Stands in a hidden parameter set's id where this pytest cannot hide it (before 8.4).
+SIZE_ID = "growthsize"
+
+
+def hide_id() -> Any:
+    """What to pass as the id of a parameter set that must not show in node ids."""
+    return getattr(pytest, "HIDDEN_PARAM", SIZE_ID)
+
+
+def without_size_id(name: str) -> str:
+    """`name` of an item or a node id without the mark that `hide_id` may have left in it."""
+    for spelling in (f"[{SIZE_ID}]", f"-{SIZE_ID}", f"{SIZE_ID}-"):
+        if spelling in name:
+            return name.replace(spelling, "", 1)
+    return name
+
+
+def hide_size_id(item: pytest.Item) -> None:
+    """Take the mark out of the name of a plain item that was given a hidden parameter for nothing."""
+    if SIZE_ID in item.name:
+        item.name = without_size_id(item.name)
+        item._nodeid = without_size_id(item.nodeid)
+
+
+def own_keywords(item: pytest.Item) -> dict[str, Any]:
+    """The keywords of `item` itself, without those of its parents."""
+    return dict(item.keywords._markers)
+
+
+def set_params(template: pytest.Function, values: Mapping[str, object]) -> None:
+    """Give the parameters `values` to the next run of `template`."""
+    template.callspec.params.update(values)
+
+
+def leave_stack(item: pytest.Item, template: pytest.Function) -> None:
+    """Take `item`, which pytest has set up, off the stack of active nodes, so that `template` can be set up."""
+    item.session._setupstate.teardown_exact(template)
+
+
+def set_up(template: pytest.Function) -> dict[str, object]:
+    """Build the fixtures of `template` afresh; return the arguments of its function."""
+    template._initrequest()
+    if isinstance(template.parent, pytest.Class):
+        template.__dict__.pop("_obj", None)
+        template.__dict__.pop("_instance", None)
+    template.session._setupstate.setup(template)
+    return {name: template.funcargs[name] for name in template._fixtureinfo.argnames}
+
+
+def tear_down(template: pytest.Function, item: pytest.Item) -> None:
+    """Finalize the function-scoped fixtures of `template`; wider ones stay, since `item` is said to come next."""
+    template.session._setupstate.teardown_exact(item)
+
+
+def is_set_up(template: pytest.Function) -> bool:
+    return template in template.session._setupstate.stack
+
+
+def scope_of(template: pytest.Function, fixture: str) -> str:
+    """The scope of the fixture that `template` gets under the name `fixture`; "" for an argument."""
+    found = template._fixtureinfo.name2fixturedefs.get(fixture)
+    return found[-1].scope if found else ""
+
+
+def names_of_fixtures(template: pytest.Function) -> Iterable[str]:
+    """The names of all fixtures and arguments that `template` uses, directly or through other fixtures."""
+    return template._fixtureinfo.names_closure
+
+
+def requested_by(template: pytest.Function, fixture: str) -> tuple[str, ...]:
+    """The names that the fixture `fixture` of `template` asks for in its turn."""
+    found = template._fixtureinfo.name2fixturedefs.get(fixture)
+    return found[-1].argnames if found else ()
+
+
+def direct_arguments(template: pytest.Function) -> tuple[str, ...]:
+    return template._fixtureinfo.argnames
+
+
+def share_stash(template: pytest.Function, item: pytest.Item) -> None:
+    """Let fixtures of `template` find what pytest's own plugins keep on `item` (caplog, tmp_path)."""
+    template.stash = item.stash
+
+
+def forget_output(item: pytest.Item) -> None:
+    """Drop what was printed and logged so far in this phase: a thousand readings must not be kept as text."""
+    manager = item.config.pluginmanager
+    capture = manager.get_plugin("capturemanager")
+    if capture is not None and capture.is_globally_capturing():
+        capture.read_global_capture()
+    logging = manager.get_plugin("logging-plugin")
+    if logging is not None:
+        logging.caplog_handler.clear()
+        logging.report_handler.clear()
+
+
+def is_test_case(collected: object) -> bool:
+    """Whether pytest made `collected` for a `unittest.TestCase`."""
+    from _pytest.unittest import UnitTestCase
+
+    return isinstance(collected, UnitTestCase)
+
+
+def is_async(function: object) -> bool:
+    target = inspect.unwrap(function) if callable(function) else function
+    return inspect.iscoroutinefunction(target) or inspect.isasyncgenfunction(target)
