@@ -1,0 +1,112 @@
+"""What the corpus knows of one function, and the shelf on which a module puts its functions."""
+
+from __future__ import annotations
+
+import hashlib
+import random
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+from typing import Any, Literal, TypeVar
+
+Build = Callable[[int, random.Random], tuple[Any, ...]]
+Body = TypeVar("Body", bound=Callable[..., object])
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Kind:
+    """A class of growth: `too_tight` are budgets below it that a clock can tell, `loose` is one above."""
+
+    bound: str
+    loose: str
+    too_tight: tuple[str, ...] = ()
+
+
+CONSTANT = Kind(bound="1", loose="log n")
+LOGARITHM = Kind(bound="log n", loose="sqrt(n)")
+ROOT = Kind(bound="sqrt(n)", loose="n", too_tight=("log n",))
+LINEAR = Kind(bound="n", loose="n log n", too_tight=("log n",))
+LOGLINEAR = Kind(bound="n log n", loose="n^1.5")
+ROOT_CUBED = Kind(bound="n^1.5", loose="n^2", too_tight=("n",))
+THREE_HALVES = Kind(bound="n^1.585", loose="n^2", too_tight=("n",))
+QUADRATIC = Kind(bound="n^2", loose="n^3", too_tight=("n log n", "n"))
+QUADRATIC_LOG = Kind(bound="n^2 log n", loose="n^3", too_tight=("n log n",))
+SEVEN_HALVES = Kind(bound="n^2.807", loose="n^3", too_tight=("n^2",))
+CUBIC = Kind(bound="n^3", loose="n^4", too_tight=("n^2",))
+GOLDEN = Kind(bound="1.618^n", loose="2^n", too_tight=("n^3",))
+DOUBLING = Kind(bound="2^n", loose="3^n", too_tight=("1.5^n",))
+FACTORIAL = Kind(bound="n!", loose="n n!", too_tight=("2^n",))
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Entry:
+    """A function body with its true growth.
+
+    `build(n, rng)`: a fresh input, as the arguments of one call. `expected`: the right answer, found another
+    way from the same arguments; None where it is not cheap. `dominates`: the fastest-growing term makes up most
+    of the cost where a call takes some 30 ms (or at `largest`). `reusable`: a call leaves its arguments as they
+    were.
+    """
+
+    name: str
+    body: Callable[..., object]
+    build: Build
+    growth: str
+    too_tight: tuple[str, ...]
+    loose: str
+    tags: frozenset[str]
+    dominates: bool
+    reusable: bool
+    smallest: int
+    largest: int
+    expected: Callable[..., object] | None
+
+    @property
+    def half(self) -> Literal["choose", "hold"]:
+        """Rules are chosen on one half and checked on the other; the name alone decides which."""
+        return "hold" if hashlib.sha256(self.name.encode()).digest()[0] % 2 else "choose"
+
+
+class Shelf:
+    """Collects the functions of one module, in the order in which they are written."""
+
+    def __init__(self) -> None:
+        self._entries: list[Entry] = []
+
+    def __iter__(self) -> Iterator[Entry]:
+        return iter(self._entries)
+
+    def add(
+        self,
+        kind: Kind,
+        build: Build,
+        *,
+        growth: str | None = None,
+        expected: Callable[..., object] | None = None,
+        tags: str = "",
+        dominates: bool = True,
+        reusable: bool = False,
+        smallest: int = 8,
+        largest: int = 2_000_000,
+    ) -> Callable[[Body], Body]:
+        """Decorates a body; `growth` says in other words (a recurrence) what `kind` says."""
+
+        def shelve(body: Body) -> Body:
+            self._entries.append(
+                Entry(
+                    name=body.__name__,
+                    body=body,
+                    build=build,
+                    growth=growth or kind.bound,
+                    too_tight=kind.too_tight,
+                    loose=kind.loose,
+                    tags=frozenset(tags.split()),
+                    dominates=dominates,
+                    reusable=reusable,
+                    smallest=smallest,
+                    largest=largest,
+                    expected=expected,
+                )
+            )
+            return body
+
+        return shelve
