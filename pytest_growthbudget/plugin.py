@@ -22,7 +22,7 @@ from pytest_growthbudget.workloads.fixtures import (
 )
 
 if TYPE_CHECKING:
-    from pytest_growthbudget.settings import Settings
+    pass
 
 __all__ = ["metered", "problem_size", "tally", "workload_rng"]
 
@@ -38,9 +38,7 @@ def pytest_addoption(parser: pytest.Parser) -> None:
         default="on",
         help="Judge growth budgets, or run each budgeted test once as a plain test (on).",
     )
-    group.addoption(
-        "--growth-seed", type=int, metavar="N", help="Seed the sizes and workloads with this number (1)."
-    )
+    group.addoption("--growth-seed", type=int, metavar="N", help="Seed the sizes and workloads with this number (1).")
     group.addoption(
         "--growth-time-limit",
         type=float,
@@ -70,9 +68,7 @@ def pytest_pycollect_makeitem(collector: pytest.Collector) -> Generator[None, An
     made = yield
     settings = collector.config.stash[settings_key]
     if isinstance(made, list):
-        return [
-            collect.reported(item, settings) if isinstance(item, pytest.Function) else item for item in made
-        ]
+        return [collect.reported(item, settings) if isinstance(item, pytest.Function) else item for item in made]
     if made is not None and settings.enabled and internals.is_test_case(made):
         collect.refuse_test_case(made, settings)
     return made

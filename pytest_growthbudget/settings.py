@@ -288,26 +288,20 @@ def plan_of(args: tuple[Any, ...], kwargs: Mapping[str, Any], settings: Settings
         hint = nearest(unknown[0], _SIGNATURE.parameters)
         raise SettingsError(f"{source}: growth_budget has no argument {unknown[0]!r}; {hint}")
     if len(args) > 1:
-        raise SettingsError(
-            f"{source}: growth_budget takes one bound; got {len(args)}: stack one marker a budget"
-        )
+        raise SettingsError(f"{source}: growth_budget takes one bound; got {len(args)}: stack one marker a budget")
     if args and "bound" in kwargs:
         raise SettingsError(f"{source}: growth_budget got its bound twice")
     bound = args[0] if args else kwargs.get("bound")
     if bound is None:
         raise SettingsError(f'{source}: growth_budget needs a bound, such as "n log n"')
     if not isinstance(bound, str):
-        raise SettingsError(f"{source}: the bound must be text, such as \"n log n\"; got {bound!r}")
+        raise SettingsError(f'{source}: the bound must be text, such as "n log n"; got {bound!r}')
     try:
         budget = parse_budget(bound)
     except BoundError as error:
         raise SettingsError(f"{source}:\n{error}") from None
 
-    given = {
-        key: _checked(key, value, source)
-        for key, value in kwargs.items()
-        if key != "bound" and value is not None
-    }
+    given = {key: _checked(key, value, source) for key, value in kwargs.items() if key != "bound" and value is not None}
     meter = given.get("meter", "cpu_time")
     smallest, largest = given.get("smallest"), given.get("largest")
     if smallest is not None and largest is not None and largest < 2 * smallest:

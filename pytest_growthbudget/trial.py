@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import asdict
 from typing import TYPE_CHECKING
 
@@ -18,7 +19,6 @@ from pytest_growthbudget.reporting.wire import to_wire
 from pytest_growthbudget.workloads.repeat import (
     BodyFailed,
     GrowthItem,
-    MeterFault,
     Repeater,
     collector_spared,
     warnings_apart,
@@ -47,14 +47,14 @@ def hold(item: GrowthItem) -> None:
         item.failed_at = str(failure)
         assert failure.__cause__ is not None
         raise failure.__cause__
-    from pytest_growthbudget.reporting.failure import first_line, fails
+    from pytest_growthbudget.reporting.failure import fails, first_line
 
     broken = [judgement for judgement in item.judgements if fails(judgement)]
     if broken:
         pytest.fail("\n".join(first_line(judgement) for judgement in broken), pytrace=False)
 
 
-def judge_plan(item: GrowthItem, plan: Plan, forget: object) -> Judgement:
+def judge_plan(item: GrowthItem, plan: Plan, forget: Callable[[], None]) -> Judgement:
     """Measure one budget of `item` and judge it. Raises `BodyFailed` where the test itself fails."""
     from pytest_growthbudget.fitting.rule import decide
 
@@ -62,7 +62,8 @@ def judge_plan(item: GrowthItem, plan: Plan, forget: object) -> Judgement:
     fixture = plan.vary[variable]
     began = clocks.wall_time_ns()
     meter = meter_for(plan.meter)
-    repeater = Repeater(item, lambda size: {fixture: size})
+    watch = Watch(plan.time_limit)
+    repeater = Repeater(item, lambda size: {fixture: size}, watch)
     growth = plan.budget.along({variable: 1.0}, {})
     promise = Promise(
         log_growth=growth,
@@ -72,9 +73,8 @@ def judge_plan(item: GrowthItem, plan: Plan, forget: object) -> Judgement:
         deterministic=meter.deterministic,
         curve=lambda: memory_curve(item.config),
     )
-    watch = Watch(plan.time_limit)
     campaign = Campaign(
-        take=taker(repeater, meter, watch),
+        take=taker(repeater, meter, forget),
         footprint=repeater.footprint,
         now=clocks.wall_time_ns,
         limits=Limits(
@@ -90,7 +90,7 @@ def judge_plan(item: GrowthItem, plan: Plan, forget: object) -> Judgement:
     with watch.start():
         try:
             finding = campaign.run(decide(promise))
-        except (MeterFault, MeterError) as error:
+        except MeterError as error:
             finding = Finding(verdict="unmeasured", reason=str(error))
     return Judgement(
         **{name: getattr(finding, name) for name in Finding.__dataclass_fields__},
@@ -107,9 +107,12 @@ def judge_plan(item: GrowthItem, plan: Plan, forget: object) -> Judgement:
     )
 
 
-def taker(repeater: Repeater, meter: Meter, watch: Watch):  # type: ignore[no-untyped-def]
+def taker(repeater: Repeater, meter: Meter, forget: Callable[[], None]) -> Callable[[int, int], Reading]:
+    """What the campaign calls for one reading. Warnings that the body gave are forgotten after each."""
+
     def take(size: int, calls: int) -> Reading:
         taken = repeater.take(size, meter, calls)
+        forget()
         return Reading(size=size, cost=taken.cost, calls=calls, wall=taken.wall, elapsed=taken.elapsed)
 
     return take

@@ -140,9 +140,7 @@ class Campaign:
     def _step_up(self) -> None:
         limits = self.limits
         if not self._rungs:
-            self._ideal = sizing.first_size(
-                limits.smallest, self._rng.random(), exponential=limits.exponential
-            )
+            self._ideal = sizing.first_size(limits.smallest, self._rng.random(), exponential=limits.exponential)
         else:
             self._ideal = sizing.next_size(
                 self._ideal,
@@ -167,7 +165,9 @@ class Campaign:
         top = self._rungs[-1]
         growth = self._trend(lambda rung: rung.elapsed)
         predicted = top.elapsed * (size / top.size) ** growth
-        if 2 * predicted > self.left:
+        # The climb must leave time for one set of readings at every size.
+        one_round = predicted + sum(rung.elapsed for rung in self._rungs)
+        if (2 + self.limits.fewest) * one_round > self.left:
             self._ended = "time"
             return False
         if self._bytes_at(size) > self.limits.memory:
@@ -238,9 +238,7 @@ class Campaign:
 
     def _ladder(self) -> Ladder:
         rungs = self._rungs
-        readable = next(
-            (i for i, rung in enumerate(rungs) if rung.cost * rung.calls >= self.limits.floor), len(rungs)
-        )
+        readable = next((i for i, rung in enumerate(rungs) if rung.cost * rung.calls >= self.limits.floor), len(rungs))
         return Ladder(
             sizes=tuple(rung.size for rung in rungs),
             costs=tuple(rung.cost for rung in rungs),
@@ -304,9 +302,7 @@ class Campaign:
                 complete = False
                 break
         kept = [(rung.size, tuple(cost)) for rung, cost in zip(rungs, costs, strict=True) if cost]
-        return Series(
-            sizes=tuple(size for size, _ in kept), costs=tuple(cost for _, cost in kept), complete=complete
-        )
+        return Series(sizes=tuple(size for size, _ in kept), costs=tuple(cost for _, cost in kept), complete=complete)
 
     def _readings_of(self, rung: _Rung, request: Rounds) -> int:
         if request.calls:
@@ -361,4 +357,3 @@ class Campaign:
         while size > top_size and self._bytes_at(int(size)) > limit:
             size /= 1.1
         return int(size) if size > top_size else None
-

@@ -144,7 +144,10 @@ def _local_exponents(rows: list[dict[str, Any]]) -> list[str]:
 
 def _forecast(judgement: dict[str, Any]) -> str:
     unit = judgement["unit"]
-    lines = ["  forecast, at sizes that were not run", f"  {'n':>12}  {'expected':>10}  {'interval':>24}  budget allows"]
+    lines = [
+        "  forecast, at sizes that were not run",
+        f"  {'n':>12}  {'expected':>10}  {'interval':>24}  budget allows",
+    ]
     for row in judgement["forecast"]:
         cost = row["cost"]
         interval = f"{units.cost(cost['low'], unit)} to {units.cost(cost['high'], unit)}"
@@ -162,7 +165,9 @@ def _closing(judgement: dict[str, Any]) -> str:
     if judgement["verdict"] == "exceeded":
         lines.append(_fact("look at", _hint(judgement)))
     lines.extend(_fact("note", note) for note in judgement["notes"])
-    lines.append(_fact("repeat", f"--growth-seed {judgement['seed']} (measured in {units.seconds(judgement['seconds'])})"))
+    lines.append(
+        _fact("repeat", f"--growth-seed {judgement['seed']} (measured in {units.seconds(judgement['seconds'])})")
+    )
     return "\n".join(lines)
 
 

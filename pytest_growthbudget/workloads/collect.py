@@ -17,8 +17,7 @@ def give_sizes(metafunc: pytest.Metafunc, settings: Settings) -> None:
     names = [
         name
         for name in size_names(metafunc.definition, settings)
-        if name in metafunc.fixturenames
-        and (settings.enabled or name not in metafunc._arg2fixturedefs)
+        if name in metafunc.fixturenames and (settings.enabled or name not in metafunc._arg2fixturedefs)
     ]
     if not names:
         return
@@ -41,9 +40,7 @@ def give_sizes(metafunc: pytest.Metafunc, settings: Settings) -> None:
 def size_names(definition: pytest.Item, settings: Settings) -> tuple[str, ...]:
     """The names that the budgets of a test function may vary, as far as they can be told before it is an item."""
     varies: list[Any] = [mark.kwargs.get("vary") for mark in definition.iter_markers(MARKER)]
-    varies += [
-        placed.arguments.get("vary") for placed in settings.budgets if placed.may_match(definition.nodeid)
-    ]
+    varies += [placed.arguments.get("vary") for placed in settings.budgets if placed.may_match(definition.nodeid)]
     names: dict[str, None] = {}
     for vary in varies:
         if isinstance(vary, dict):
@@ -124,4 +121,3 @@ def _no_size(nodeid: str, name: str, item: pytest.Function) -> str:
         f"    @pytest.fixture\n"
         f"    def {asked[0] if asked else 'workload'}({name}): ..."
     )
-

@@ -18,10 +18,12 @@ from typing import TYPE_CHECKING, Any
 import pytest
 
 from pytest_growthbudget.meters import clocks
+from pytest_growthbudget.meters.protocol import MeterError
 from pytest_growthbudget.workloads import internals
 from pytest_growthbudget.workloads.fixtures import shared_key
 
 if TYPE_CHECKING:
+    from pytest_growthbudget.measuring.guards import Watch
     from pytest_growthbudget.meters.protocol import Meter
     from pytest_growthbudget.settings import Plan
 
@@ -38,9 +40,7 @@ class GrowthItem(pytest.Item):
         self.plans = plans
         self.own_markers.extend(template.own_markers)
         self.keywords.update(internals.own_keywords(template))
-        self.fixturenames = [
-            name for name in internals.names_of_fixtures(template) if name != "request"
-        ]
+        self.fixturenames = [name for name in internals.names_of_fixtures(template) if name != "request"]
         #: Judgements in wire form, one a budget; what a report carries away.
         self.judgements: list[dict[str, Any]] = []
         #: The sizes at which the test itself failed; "" where it did not.
@@ -124,8 +124,9 @@ class BodyFailed(Exception):
 class Repeater:
     """Runs the template of one item at any size."""
 
-    def __init__(self, item: GrowthItem, assign: Callable[[int], dict[str, int]]) -> None:
+    def __init__(self, item: GrowthItem, assign: Callable[[int], dict[str, int]], watch: Watch) -> None:
         self._item = item
+        self._watch = watch
         self._template = item.template
         self._assign = assign
         self._shared = item.config.stash[shared_key]
@@ -142,13 +143,14 @@ class Repeater:
         internals.set_params(self._template, sizes)
         self._shared.reseed(self._item.nodeid, size, self._readings)
         try:
-            arguments = internals.set_up(self._template)
-            yield arguments
-        except Exception as error:
-            if isinstance(error, MeterFault):
-                raise
+            self._watch.guard()
+            yield internals.set_up(self._template)
+        except MeterError:
+            raise
+        except (Exception, pytest.skip.Exception, pytest.fail.Exception) as error:
             raise BodyFailed(sizes) from error
         finally:
+            self._watch.release()
             internals.tear_down(self._template, self._item)
 
     def take(self, size: int, meter: Meter, calls: int = 1) -> Taken:
@@ -185,7 +187,7 @@ class Repeater:
                 entered = metered.entered
                 metered.arm(None)
             if self._uses_metered and not entered:
-                raise MeterFault(
+                raise MeterError(
                     "the test asks for `metered` but ran no code inside `with metered:`; "
                     "put the code that the budget is about into that block"
                 )
@@ -209,10 +211,6 @@ class Repeater:
         finally:
             if not running:
                 tracemalloc.stop()
-
-
-class MeterFault(Exception):
-    """A reading that cannot be had: a whole sentence that says why and what to do."""
 
 
 def repeatable(template: pytest.Function, size_names: tuple[str, ...]) -> bool:

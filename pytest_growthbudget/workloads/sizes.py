@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Sequence
 
@@ -15,7 +16,7 @@ def first_size(smallest: int | None, unit: float, *, exponential: bool) -> float
     """Where the climb starts. `unit` is a seeded number in [0, 1)."""
     if smallest is not None:
         return float(smallest)
-    return 1.0 + int(2 * unit) if exponential else 8 * 2 ** (unit / 2)
+    return 1.0 + int(2 * unit) if exponential else 4 * 2 ** (0.1 + 0.4 * unit)
 
 
 def next_size(
@@ -41,7 +42,7 @@ def between(sizes: Sequence[int], wanted: int) -> list[int]:
     have = sorted(sizes)
     added: list[int] = []
     while len(added) < wanted:
-        gaps = [(b / a, a, b) for a, b in zip(have, have[1:], strict=False) if b - a > 1]
+        gaps = [(b / a, a, b) for a, b in itertools.pairwise(have) if b - a > 1]
         if not gaps:
             break
         _, low, high = max(gaps)

@@ -1,0 +1,258 @@
+"""The campaign on a virtual clock: every reading charges the clock what the body costs, and nothing else moves it."""
+
+from __future__ import annotations
+
+import itertools
+import math
+from collections.abc import Callable, Generator
+from typing import Any
+
+import pytest
+
+from pytest_growthbudget.measuring.campaign import MS, Campaign, Limits
+from pytest_growthbudget.measuring.guards import Overrun
+from pytest_growthbudget.measuring.readings import Climb, Ladder, Peek, Peeked, Reading, Rounds, Series
+
+
+class Bench:
+    """A body whose cost is `cost(n)` nanoseconds and whose workload takes `build(n)` more."""
+
+    def __init__(
+        self,
+        cost: Callable[[int], float],
+        build: Callable[[int], float] = lambda n: 0.0,
+        held: Callable[[int], float] = lambda n: 100.0 * n,
+        interrupt_after: float = math.inf,
+    ) -> None:
+        self.time = 0.0
+        self.cost, self.build, self.held, self.interrupt_after = cost, build, held, interrupt_after
+        self.taken: list[tuple[int, int]] = []
+
+    def now(self) -> int:
+        return int(self.time)
+
+    def take(self, size: int, calls: int) -> Reading:
+        self.taken.append((size, calls))
+        cost = self.cost(size)
+        if cost * calls > self.interrupt_after:
+            self.time += self.interrupt_after
+            raise Overrun
+        elapsed = cost * calls + self.build(size)
+        self.time += elapsed
+        return Reading(size=size, cost=cost, calls=calls, wall=cost, elapsed=elapsed)
+
+    def campaign(self, **limits: Any) -> Campaign:
+        return Campaign(take=self.take, footprint=self.held, now=self.now, limits=Limits(**limits), seed="a test")
+
+
+def asks(*requests: Any) -> Generator[Any, Any, list[Any]]:
+    """A rule that makes `requests` and returns the answers."""
+    answers = []
+    for request in requests:
+        answers.append((yield request))
+    return answers
+
+
+def climb(bench: Bench, cost: float = 5 * MS, **limits: Any) -> Ladder:
+    (ladder,) = bench.campaign(**limits).run(asks(Climb(cost)))
+    return ladder
+
+
+def test_the_climb_steps_by_half_octaves_from_a_start_that_is_no_power_of_two() -> None:
+    ladder = climb(Bench(lambda n: 100.0 * n))
+    ratios = [b / a for a, b in zip(ladder.sizes, ladder.sizes[1:], strict=False)]
+    assert 4 <= ladder.sizes[0] <= 6
+    assert all(1.15 < ratio < 1.7 for ratio in ratios)
+    assert all(abs(ratio - math.sqrt(2)) < 0.02 for ratio in ratios[10:])
+    assert not any(size & (size - 1) == 0 for size in ladder.sizes[4:])
+
+
+def test_the_climb_ends_with_the_first_size_that_costs_more_than_asked() -> None:
+    ladder = climb(Bench(lambda n: 100.0 * n))
+    assert ladder.costs[-1] > 5 * MS >= ladder.costs[-2]
+    assert ladder.ended == ""
+    assert ladder.costs == tuple(100.0 * n for n in ladder.sizes)
+
+
+def test_the_first_readable_size_is_the_first_that_costs_the_floor() -> None:
+    ladder = climb(Bench(lambda n: 100.0 * n))
+    assert ladder.costs[ladder.readable] >= 5_000 > ladder.costs[ladder.readable - 1]
+
+
+def test_a_later_climb_goes_on_where_the_first_stopped() -> None:
+    low, high = Bench(lambda n: 100.0 * n).campaign().run(asks(Climb(5 * MS), Climb(30 * MS)))
+    assert high.sizes[: len(low.sizes)] == low.sizes
+    assert high.costs[-1] > 30 * MS >= high.costs[-2]
+
+
+def test_quarter_octaves_where_half_octaves_give_too_few_sizes() -> None:
+    ladder = climb(Bench(lambda n: 5.0 * n**3))
+    usable = ladder.sizes[ladder.readable :]
+    ratios = [b / a for a, b in itertools.pairwise(usable)]
+    assert max(ratios) < 1.3
+
+
+@pytest.mark.parametrize("base", [1.05, 1.5, 2.0, 4.0, 8.0])
+def test_a_body_that_is_secretly_exponential_does_not_hang_the_climb(base: float) -> None:
+    bench = Bench(lambda n: 1_000.0 * min(base, 1e9) ** min(n, 600 / math.log(base)))
+    ladder = climb(bench, cost=30 * MS)
+    rise = [b / a for a, b in zip(ladder.costs, ladder.costs[1:], strict=False)]
+    assert max(rise[1:], default=0.0) <= max(8.01, base * 1.01)
+    assert bench.time < 10e9
+
+
+def test_a_call_that_overruns_ends_the_climb_and_keeps_the_sizes_below() -> None:
+    def cliff(n: int) -> float:
+        return 100.0 * n if n < 1_000 else 1e15
+
+    ladder = climb(Bench(cliff, interrupt_after=2e9))
+    assert ladder.ended == "runaway"
+    assert max(ladder.sizes) < 1_000
+
+
+def test_the_climb_stops_where_the_next_size_would_not_fit_the_time() -> None:
+    bench = Bench(lambda n: 10.0 * n, build=lambda n: 1e5 * n)
+    ladder = climb(bench, time=1e9)
+    assert ladder.ended == "time"
+    assert bench.time <= 1e9
+
+
+def test_the_climb_stops_below_the_memory_ceiling() -> None:
+    bench = Bench(lambda n: 1.0 * n, held=lambda n: 1000.0 * n)
+    ladder = climb(bench, memory=2.0**20)
+    assert ladder.ended == "memory"
+    assert 1000 * ladder.sizes[-1] <= 2.0**20
+
+
+def test_largest_and_smallest_are_kept() -> None:
+    ladder = climb(Bench(lambda n: 100.0 * n), smallest=50, largest=700)
+    assert (ladder.sizes[0], ladder.sizes[-1], ladder.ended) == (50, 700, "largest")
+
+
+def test_an_exponential_budget_steps_by_one() -> None:
+    ladder = climb(Bench(lambda n: 100.0 * 2.0**n), exponential=True)
+    assert ladder.sizes == tuple(range(ladder.sizes[0], ladder.sizes[-1] + 1))
+
+
+def test_footprints_are_measured_at_a_few_sizes_and_interpolated() -> None:
+    weighed: list[int] = []
+
+    def held(n: int) -> float:
+        weighed.append(n)
+        return 64.0 * n
+
+    ladder = climb(Bench(lambda n: 100.0 * n, held=held))
+    assert 2 <= len(weighed) <= 6
+    for size, held_bytes in zip(ladder.sizes, ladder.footprints, strict=True):
+        if size >= weighed[0]:
+            assert held_bytes == pytest.approx(64.0 * size, rel=1e-9)
+
+
+def test_fast_bodies_are_called_many_times_in_one_reading_where_the_workload_allows() -> None:
+    bench = Bench(lambda n: 80.0 + 10 * math.log2(n))
+    ladder = climb(bench, repeatable=True, largest=100_000)
+    assert ladder.readable == 0
+    assert all(calls >= 50 for _, calls in bench.taken[3:])
+
+
+def test_fast_bodies_are_not_repeated_where_the_workload_may_have_changed() -> None:
+    bench = Bench(lambda n: 80.0 + 10 * math.log2(n))
+    ladder = climb(bench, largest=100_000)
+    assert ladder.readable == len(ladder.sizes)
+    assert {calls for _, calls in bench.taken} == {1}
+
+
+def rounds(bench: Bench, *requests: Rounds, cost: float = 5 * MS, **limits: Any) -> list[Series]:
+    _, *series = bench.campaign(**limits).run(asks(Climb(cost), *requests))
+    return series
+
+
+def test_cheap_sizes_are_read_more_often_than_dear_ones() -> None:
+    (series,) = rounds(Bench(lambda n: 100.0 * n), Rounds(0, 99), per_size=8 * MS, fewest=5, most=25)
+    counts = [len(costs) for costs in series.costs]
+    assert counts[0] == 25
+    assert counts[-1] == 5
+    assert counts == sorted(counts, reverse=True)
+    assert series.complete
+
+
+def test_each_round_visits_every_size_once_in_shuffled_order() -> None:
+    bench = Bench(lambda n: 1e4 * n)
+    ladder, _ = bench.campaign().run(asks(Climb(5 * MS), Rounds(0, 99, calls=3)))
+    m = len(ladder.sizes)
+    read = [size for size, _ in bench.taken[-3 * m :]]
+    passes = [read[i * m : (i + 1) * m] for i in range(3)]
+    assert all(sorted(one) == list(ladder.sizes) for one in passes)
+    assert any(one != sorted(one) for one in passes)
+
+
+def test_the_same_seed_reads_the_same_sizes_in_the_same_order() -> None:
+    first, second = Bench(lambda n: 1e4 * n), Bench(lambda n: 1e4 * n)
+    for bench in (first, second):
+        rounds(bench, Rounds(0, 99, calls=3))
+    assert first.taken == second.taken
+
+
+def test_rounds_stop_at_the_time_limit_and_keep_what_was_read() -> None:
+    bench = Bench(lambda n: 100.0 * n, build=lambda n: 2e4 * n)
+    (series,) = rounds(bench, Rounds(0, 99), time=1e9, cost=1 * MS)
+    assert not series.complete
+    assert all(len(costs) >= 1 for costs in series.costs)
+    assert bench.time <= 1e9
+
+
+def test_an_overrun_in_the_rounds_keeps_what_was_read() -> None:
+    bench = Bench(lambda n: 1e4 * n)
+    campaign = bench.campaign()
+
+    def rule() -> Generator[Any, Any, Series]:
+        yield Climb(5 * MS)
+        bench.interrupt_after = 4 * MS
+        series: Series = yield Rounds(0, 99)
+        return series
+
+    series = campaign.run(rule())
+    assert not series.complete
+    assert all(costs for costs in series.costs)
+
+
+def peek(bench: Bench, **limits: Any) -> Peeked | None:
+    def rule() -> Generator[Any, Any, Peeked | None]:
+        ladder = yield Climb(5 * MS)
+        top = Peek(last=len(ladder.sizes), cost=60 * MS, footprint=float(1 << 25), beyond=1.9)
+        peeked: Peeked | None = yield top
+        return peeked
+
+    return bench.campaign(**limits).run(rule())
+
+
+def test_the_look_ahead_goes_to_the_size_that_is_foreseen_to_cost_as_much_as_allowed() -> None:
+    peeked = peek(Bench(lambda n: 100.0 * n))
+    assert peeked is not None
+    assert 20 * MS < peeked.reading.cost <= 61 * MS
+
+
+def test_the_look_ahead_stays_under_the_footprint() -> None:
+    peeked = peek(Bench(lambda n: 100.0 * n, held=lambda n: 300.0 * n))
+    assert peeked is not None
+    assert peeked.footprint <= 1 << 25
+
+
+def test_the_look_ahead_sees_a_cost_that_soars_and_stops_there() -> None:
+    bench = Bench(lambda n: 100.0 * n + 1e-6 * n**3)
+    peeked = peek(bench)
+    assert peeked is not None
+    assert peeked.reading.cost > 5 * MS
+    assert bench.time < 5e9
+
+
+def test_no_look_ahead_past_the_largest_size() -> None:
+    assert peek(Bench(lambda n: 100.0 * n), largest=60_000) is None
+
+
+def test_a_deterministic_meter_is_read_once_and_climbs_by_the_time_a_reading_takes() -> None:
+    bench = Bench(lambda n: float(n), build=lambda n: 1e3 * n)
+    ladder, series = bench.campaign(clock=False, dear=30 * MS).run(asks(Climb(math.inf, at_least=12), Rounds(0, 99)))
+    assert len(ladder.sizes) >= 12
+    assert ladder.readable == 0
+    assert {len(costs) for costs in series.costs} == {1}
