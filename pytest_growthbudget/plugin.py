@@ -6,7 +6,7 @@ PYTEST_DONT_REWRITE
 from __future__ import annotations
 
 from collections.abc import Generator
-from typing import TYPE_CHECKING, Any
+from typing import Any
 
 import pytest
 
@@ -20,13 +20,12 @@ from pytest_growthbudget.workloads.fixtures import (
     tally,
     workload_rng,
 )
+from pytest_growthbudget.workloads.repeat import GrowthItem
 
-if TYPE_CHECKING:
-    pass
 
 __all__ = ["metered", "problem_size", "tally", "workload_rng"]
 
-settings_key = pytest.StashKey["Settings"]()
+settings_key = pytest.StashKey[settings_module.Settings]()
 
 
 def pytest_addoption(parser: pytest.Parser) -> None:
@@ -82,7 +81,7 @@ def pytest_runtest_setup(item: pytest.Item) -> None:
 @pytest.hookimpl(wrapper=True)
 def pytest_runtest_makereport(item: pytest.Item) -> Generator[None, Any, Any]:
     report = yield
-    if report.when == "call" and hasattr(item, "judgements"):
+    if report.when == "call" and isinstance(item, GrowthItem):
         from pytest_growthbudget.reporting.failure import sections
 
         report.growth_judgements = [{"test": item.nodeid, **judgement} for judgement in item.judgements]

@@ -360,7 +360,7 @@ def plans_for(item: pytest.Item, nodeid: str, settings: Settings) -> tuple[Plan,
     A budget for a meter that a nearer one has judged already is left out. Raises `SettingsError`.
     """
     plans: dict[str, Plan] = {}
-    nodes: dict[str, pytest.Item | pytest.Collector] = {}
+    nodes: dict[str, object] = {}
     for node, mark in item.iter_markers_with_node(MARKER):
         where = nodeid if node is item else f"{nodeid} (marker on {node.name})"
         plan = plan_of(mark.args, mark.kwargs, settings, where)

@@ -276,10 +276,10 @@ class Campaign:
         (n1, b1), (n2, b2) = known[index - 1], known[index]
         slope = math.log(b2 / b1) / math.log(n2 / n1)
         if size > n2:
-            return b2 * (size / n2) ** min(max(slope, 0.0), 2.1)
+            return float(b2 * (size / n2) ** min(max(slope, 0.0), 2.1))
         if size < n1:
             return b1
-        return b1 * (size / n1) ** slope
+        return float(b1 * (size / n1) ** slope)
 
     # ------------------------------------------------------------ rounds
 

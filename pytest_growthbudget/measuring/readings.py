@@ -110,7 +110,8 @@ class MemoryCurve:
 
     Shapes (k,): `log_bytes` ascending natural logs; `log_inflation` the log of the cost per element against the
     smallest footprint, largest over the kernels, non-decreasing; `extra` the added nanoseconds per element.
-    `resident`: bytes up to which the inflation stays under 1.2. `cheapest`: nanoseconds per element of the cheapest kernel.
+    `resident`: bytes up to which the inflation stays under 1.2. `cheapest`: nanoseconds per element of the
+    cheapest kernel.
     """
 
     log_bytes: tuple[float, ...]

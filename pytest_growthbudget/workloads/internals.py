@@ -9,6 +9,7 @@ import inspect
 from typing import TYPE_CHECKING, Any
 
 import pytest
+from _pytest.tmpdir import tmppath_result_key
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping
@@ -34,12 +35,12 @@ def hide_size_id(item: pytest.Item) -> None:
     """Take the mark out of the name of a plain item that was given a hidden parameter for nothing."""
     if SIZE_ID in item.name:
         item.name = without_size_id(item.name)
-        item._nodeid = without_size_id(item.nodeid)
+        item._nodeid = without_size_id(item.nodeid)  # type: ignore[attr-defined]
 
 
 def own_keywords(item: pytest.Item) -> dict[str, Any]:
     """The keywords of `item` itself, without those of its parents."""
-    return dict(item.keywords._markers)
+    return dict(item.keywords._markers)  # type: ignore[attr-defined]
 
 
 def set_params(template: pytest.Function, values: Mapping[str, object]) -> None:
@@ -55,6 +56,8 @@ def leave_stack(item: pytest.Item, template: pytest.Function) -> None:
 def set_up(template: pytest.Function) -> dict[str, object]:
     """Build the fixtures of `template` afresh; return the arguments of its function."""
     template._initrequest()
+    # tmp_path asks there whether the test passed, and takes the answer away when it is torn down.
+    template.stash.setdefault(tmppath_result_key, {"setup": True, "call": True})
     if isinstance(template.parent, pytest.Class):
         template.__dict__.pop("_obj", None)
         template.__dict__.pop("_instance", None)

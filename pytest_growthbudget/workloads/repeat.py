@@ -48,8 +48,10 @@ class GrowthItem(pytest.Item):
 
     @classmethod
     def in_place_of(cls, template: pytest.Function, plans: tuple[Plan, ...]) -> GrowthItem:
+        parent = template.parent
+        assert parent is not None
         item: GrowthItem = cls.from_parent(
-            template.parent,
+            parent,
             name=internals.without_size_id(template.name),
             template=template,
             plans=plans,
@@ -143,15 +145,16 @@ class Repeater:
         internals.set_params(self._template, sizes)
         self._shared.reseed(self._item.nodeid, size, self._readings)
         try:
-            self._watch.guard()
-            yield internals.set_up(self._template)
+            try:
+                self._watch.guard()
+                yield internals.set_up(self._template)
+            finally:
+                self._watch.release()
+                internals.tear_down(self._template, self._item)
         except MeterError:
             raise
         except (Exception, pytest.skip.Exception, pytest.fail.Exception) as error:
             raise BodyFailed(sizes) from error
-        finally:
-            self._watch.release()
-            internals.tear_down(self._template, self._item)
 
     def take(self, size: int, meter: Meter, calls: int = 1) -> Taken:
         """Build the workload of `size`, then read `calls` calls of the body with `meter`.
