@@ -1,0 +1,22 @@
+"""Every line read cuts it off the text, and copies the rest: n². Its budget stands in pyproject.toml."""
+
+from __future__ import annotations
+
+from harbour.manifests import Consignment
+
+
+def read_manifest(text: str) -> list[Consignment]:
+    consignments = []
+    while text:
+        end = text.index("\n")
+        container, port, tonnes = text[:end].split(";")
+        consignments.append(Consignment(container, port, int(tonnes)))
+        text = text[end + 1 :]
+    return consignments
+
+
+def test_every_line_becomes_a_consignment(manifest_text: str, problem_size: int) -> None:
+    consignments = read_manifest(manifest_text)
+    assert len(consignments) == problem_size
+    assert manifest_text.startswith(consignments[0].container)
+    assert manifest_text.endswith(f"{consignments[-1].tonnes}\n")
