@@ -166,9 +166,7 @@ def radix_sort_of_shorts(values: Any) -> Any:
     return np.sort(values, kind="stable")
 
 
-@shelf.add(
-    LINEAR, array, expected=lambda values: values.tolist(), tags="numpy allocator cache", reusable=True
-)
+@shelf.add(LINEAR, array, expected=lambda values: values.tolist(), tags="numpy allocator cache", reusable=True)
 def array_to_list(values: Any) -> Any:
     return values.tolist()
 

@@ -69,15 +69,13 @@ def matrix_of_n_cells(n: int, rng: random.Random) -> Arguments:
     return draw.random((side, side)).tolist(), draw.random((side, side)).tolist()
 
 
-@shelf.add(
-    ROOT_CUBED, matrix_of_n_cells, expected=lambda a, b: (np.array(a) @ np.array(b)).tolist(), reusable=True
-)
+@shelf.add(ROOT_CUBED, matrix_of_n_cells, expected=lambda a, b: (np.array(a) @ np.array(b)).tolist(), reusable=True)
 def product_of_n_cells(one: list[list[float]], other: list[list[float]]) -> list[list[float]]:
     columns = list(zip(*other, strict=True))
     return [[sum([a * b for a, b in zip(row, column, strict=True)]) for column in columns] for row in one]
 
 
-@shelf.add(ROOT_CUBED, floats, expected=lambda values: values, dominates=False, tags="hidden", reusable=True)
+@shelf.add(ROOT_CUBED, floats, expected=lambda values: values, tags="hidden", reusable=True)
 def copy_at_every_root_step(values: list[float]) -> list[float]:
     kept: list[float] = []
     step = math.isqrt(len(values))
@@ -142,9 +140,7 @@ def two_long_numbers(n: int, rng: random.Random) -> Arguments:
     tags="sawtooth hidden",
     reusable=True,
     smallest=400,
-    expected=lambda a, b: sum(
-        (a >> 64 * i & (1 << 64) - 1) * b << 64 * i for i in range(a.bit_length() // 64 + 1)
-    ),
+    expected=lambda a, b: sum((a >> 64 * i & (1 << 64) - 1) * b << 64 * i for i in range(a.bit_length() // 64 + 1)),
 )
 def product_of_long_numbers(one: int, other: int) -> int:
     return one * other
@@ -202,9 +198,7 @@ def brute_force_or(n: int, rng: random.Random) -> Arguments:
     brute_force_or,
     tags="cache",
     reusable=True,
-    expected=lambda rows: sum(
-        math.fsum(max(a, b) for a, b in zip(x, y, strict=True)) for x in rows for y in rows
-    ),
+    expected=lambda rows: sum(math.fsum(max(a, b) for a, b in zip(x, y, strict=True)) for x in rows for y in rows),
 )
 def compare_all_rows(rows: list[list[float]]) -> float:
     total = 0.0
@@ -218,7 +212,6 @@ def compare_all_rows(rows: list[list[float]]) -> float:
     ROOT_CUBED,
     matrix_of_n_cells,
     expected=lambda a, b: np.array(a) @ np.array(b),
-    dominates=False,
     tags="numpy hidden",
     reusable=True,
 )

@@ -81,9 +81,7 @@ def cheapest_bracketing(sides: list[int]) -> int:
     reusable=True,
     smallest=SMALL,
     tags="library",
-    expected=lambda v: sum(
-        v[i] + v[j] + v[k] == 0 for i in range(len(v)) for j in range(i) for k in range(j)
-    ),
+    expected=lambda v: sum(v[i] + v[j] + v[k] == 0 for i in range(len(v)) for j in range(i) for k in range(j)),
 )
 def triples_that_cancel(values: list[int]) -> int:
     return sum(a + b + c == 0 for a, b, c in itertools.combinations(values, 3))
@@ -126,13 +124,9 @@ def best_by_running(values: list[int]) -> int:
     return best
 
 
-@shelf.add(
-    CUBIC, small_integers, expected=best_by_running, tags="builtin slices", reusable=True, smallest=SMALL
-)
+@shelf.add(CUBIC, small_integers, expected=best_by_running, tags="builtin slices", reusable=True, smallest=SMALL)
 def best_slice_by_all_sums(values: list[int]) -> int:
-    return max(
-        sum(values[low:high]) for low in range(len(values) + 1) for high in range(low, len(values) + 1)
-    )
+    return max(sum(values[low:high]) for low in range(len(values) + 1) for high in range(low, len(values) + 1))
 
 
 def relation(n: int, rng: random.Random) -> Arguments:
@@ -160,7 +154,6 @@ def close_relation(pairs: list[list[bool]]) -> list[list[bool]]:
     CUBIC,
     two_square_arrays,
     expected=lambda a, b: np.einsum("ij,jk->ik", a, b),
-    dominates=True,
     tags="numpy hidden",
     reusable=True,
     smallest=16,
@@ -192,7 +185,6 @@ def solve_array_equations(rows: Any, right: Any) -> Any:
     CUBIC,
     lambda n, rng: (bulk(rng).random((n, n)),),
     expected=lambda a: np.array(shortest_by_powers(a.tolist())),
-    dominates=False,
     tags="numpy hidden streaming",
     smallest=16,
     largest=800,
@@ -251,9 +243,7 @@ def seven_halves_over_pairs(values: list[int]) -> int:
                 if one > other:
                     count += 1
         half = len(piece) // 2
-        return count + (
-            sum(part(piece[i * half // 6 : i * half // 6 + half]) for i in range(7)) if half else 0
-        )
+        return count + (sum(part(piece[i * half // 6 : i * half // 6 + half]) for i in range(7)) if half else 0)
 
     return part(values)
 
@@ -278,3 +268,33 @@ def right_triangles_by_trial(n: int) -> int:
                 if a * a + b * b == c * c:
                     count += 1
     return count
+
+
+def relation_as_bits(n: int, rng: random.Random) -> Arguments:
+    return ([sum(1 << bit for bit in rng.sample(range(n), 2)) for _ in range(n)],)
+
+
+def reachable_by_flood(rows: list[int]) -> list[int]:
+    found = []
+    for row in rows:
+        reached, last = row, 0
+        while reached != last:
+            last = reached
+            for there, further in enumerate(rows):
+                if last >> there & 1:
+                    reached |= further
+        found.append(reached)
+    return found
+
+
+@shelf.add(
+    CUBIC, relation_as_bits, expected=reachable_by_flood, dominates=False, tags="hidden fast bits", smallest=SMALL
+)
+def close_relation_in_bits(rows: list[int]) -> list[int]:
+    """n² steps of plain Python, each of which joins two rows of n bits."""
+    for middle in range(len(rows)):
+        beyond, mark = rows[middle], 1 << middle
+        for place, row in enumerate(rows):
+            if row & mark:
+                rows[place] = row | beyond
+    return rows

@@ -253,9 +253,7 @@ def balanced_tree(n: int, rng: random.Random) -> Arguments:
     return grow(0, n), [rng.randrange(n) for _ in range(100)]
 
 
-@shelf.add(
-    LOGARITHM, balanced_tree, expected=lambda tree, keys: keys, reusable=True, tags="cache", largest=300_000
-)
+@shelf.add(LOGARITHM, balanced_tree, expected=lambda tree, keys: keys, reusable=True, tags="cache", largest=300_000)
 def descend_tree_100_times(tree: Any, keys: list[int]) -> list[int]:
     found = []
     for key in keys:

@@ -28,9 +28,7 @@ def random_graph(n: int, rng: random.Random) -> Arguments:
 
 def component_count(graph: Any) -> int:
     laplacian = networkx.to_numpy_array(graph, weight=None)
-    reach = (
-        np.linalg.matrix_power(np.eye(len(laplacian)) + (laplacian > 0), len(laplacian).bit_length() ** 2) > 0
-    )
+    reach = np.linalg.matrix_power(np.eye(len(laplacian)) + (laplacian > 0), len(laplacian).bit_length() ** 2) > 0
     return len({tuple(row) for row in reach.tolist()})
 
 
@@ -116,6 +114,5 @@ def order_of_work(graph: Any) -> bool:
 def all_lengths_in_graph(graph: Any) -> dict[Any, dict[Any, float]]:
     lengths = networkx.floyd_warshall(graph)
     return {
-        one: {other: length for other, length in row.items() if length < float("inf")}
-        for one, row in lengths.items()
+        one: {other: length for other, length in row.items() if length < float("inf")} for one, row in lengths.items()
     }

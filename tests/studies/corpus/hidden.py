@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import bisect
+import hashlib
+import json
 import math
 import random
 from typing import Any
@@ -10,7 +12,7 @@ from typing import Any
 import numpy as np
 
 from .entry import QUADRATIC, Shelf
-from .inputs import Arguments, bulk, bytes_without_255, floats, letters, number_words
+from .inputs import Arguments, bulk, bytes_and_floats, floats, letters, number_words
 
 shelf = Shelf()
 
@@ -19,7 +21,6 @@ shelf = Shelf()
     QUADRATIC,
     floats,
     expected=lambda values: values[::-1],
-    dominates=True,
     tags="hidden builtin",
     reusable=True,
 )
@@ -30,7 +31,7 @@ def insert_at_front(values: list[float]) -> list[float]:
     return turned
 
 
-@shelf.add(QUADRATIC, floats, expected=math.fsum, tags="hidden builtin steps allocator", dominates=False)
+@shelf.add(QUADRATIC, floats, expected=math.fsum, tags="hidden builtin steps allocator")
 def pop_from_front(values: list[float]) -> float:
     total = 0.0
     while values:
@@ -38,7 +39,7 @@ def pop_from_front(values: list[float]) -> float:
     return total
 
 
-@shelf.add(QUADRATIC, letters, expected=len, tags="hidden strings allocator", dominates=True, reusable=True)
+@shelf.add(QUADRATIC, letters, expected=len, tags="hidden strings allocator", reusable=True)
 def eat_text_letter_by_letter(text: str) -> int:
     eaten = 0
     while text:
@@ -58,9 +59,8 @@ def slice_off_first(values: list[float]) -> float:
 
 @shelf.add(
     QUADRATIC,
-    bytes_without_255,
+    bytes_and_floats,
     expected=lambda data, v: math.fsum(math.sqrt(x) * math.sin(x) for x in v),
-    dominates=False,
     tags="hidden fast",
     reusable=True,
 )
@@ -73,7 +73,7 @@ def scan_bytes_behind_arithmetic(data: bytes, values: list[float]) -> float:
     return total
 
 
-@shelf.add(QUADRATIC, floats, expected=sorted, dominates=False, tags="hidden library", reusable=True)
+@shelf.add(QUADRATIC, floats, expected=sorted, tags="hidden library", reusable=True)
 def insert_in_order(values: list[float]) -> list[float]:
     ordered: list[float] = []
     for value in values:
@@ -177,7 +177,6 @@ def copy_table_at_each_step(values: list[float]) -> dict[float, bool]:
     lambda n, rng: (list(range(n)),),
     expected=lambda values: 0,
     tags="hidden builtin",
-    dominates=True,
 )
 def remove_one_by_one(values: list[int]) -> int:
     for value in reversed(range(len(values))):
@@ -214,3 +213,35 @@ def copy_buffer_for_each_record(data: bytes) -> list[int]:
         buffer[record] = 0
         lengths.append(len(bytes(buffer)))
     return lengths
+
+
+@shelf.add(
+    QUADRATIC,
+    bytes_and_floats,
+    expected=lambda data, values: sum(len(repr(value)) + 13 for value in values),
+    dominates=False,
+    tags="hidden fast library",
+    reusable=True,
+)
+def write_record_and_scan_bytes(data: bytes, values: list[float]) -> int:
+    written = 0
+    for value in values:
+        written += len(json.dumps({"depth": value, "": 0})) - 7
+        written += data.find(255) + 1
+    return written
+
+
+@shelf.add(
+    QUADRATIC,
+    lambda n, rng: (bytearray(n), bulk(rng).integers(0, 1 << 40, n).tolist()),
+    expected=lambda flags, keys: b"\1" * len(flags),
+    dominates=False,
+    tags="hidden fast allocator library",
+)
+def copy_flags_behind_digests(flags: bytearray, keys: list[int]) -> bytes:
+    seen = bytes(flags)
+    for place, key in enumerate(keys):
+        hashlib.sha256(str(key).encode()).hexdigest()
+        flags[place] = 1
+        seen = bytes(flags)
+    return seen

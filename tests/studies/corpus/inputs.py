@@ -78,9 +78,12 @@ def random_bytes(n: int, rng: random.Random) -> Arguments:
     return (bulk(rng).bytes(n),)
 
 
-def bytes_without_255(n: int, rng: random.Random) -> Arguments:
-    draw = bulk(rng)
-    return draw.integers(0, 255, n).astype(np.uint8).tobytes(), draw.random(n).tolist()
+def bytes_below_255(n: int, rng: random.Random) -> Arguments:
+    return (bulk(rng).integers(0, 255, n, dtype=np.uint8).tobytes(),)
+
+
+def bytes_and_floats(n: int, rng: random.Random) -> Arguments:
+    return bytes_below_255(n, rng) + floats(n, rng)
 
 
 def array(n: int, rng: random.Random) -> Arguments:

@@ -55,11 +55,7 @@ def dump_json(values: list[float]) -> str:
 
 
 def json_records(n: int, rng: random.Random) -> Arguments:
-    return (
-        json.dumps(
-            [{"berth": i, "tons": tons} for i, tons in enumerate(bulk(rng).integers(0, 9999, n).tolist())]
-        ),
-    )
+    return (json.dumps([{"berth": i, "tons": tons} for i, tons in enumerate(bulk(rng).integers(0, 9999, n).tolist())]),)
 
 
 @shelf.add(
@@ -99,10 +95,7 @@ def long_words_by_pattern(text: str) -> list[str]:
 def csv_text(n: int, rng: random.Random) -> Arguments:
     return (
         "".join(
-            [
-                f"{i},quay {value},{value / 7:.2f}\r\n"
-                for i, value in enumerate(bulk(rng).integers(0, 999, n).tolist())
-            ]
+            [f"{i},quay {value},{value / 7:.2f}\r\n" for i, value in enumerate(bulk(rng).integers(0, 999, n).tolist())]
         ),
     )
 
@@ -224,9 +217,7 @@ def escape_for_html(text: str) -> str:
     return html.escape(text + "<&>" * 3)
 
 
-@shelf.add(
-    LINEAR, random_bytes, expected=lambda data: data, tags="library fast", reusable=True, largest=20_000_000
-)
+@shelf.add(LINEAR, random_bytes, expected=lambda data: data, tags="library fast", reusable=True, largest=20_000_000)
 def there_and_back_base64(data: bytes) -> bytes:
     return base64.b64decode(base64.b64encode(data))
 
@@ -248,9 +239,7 @@ def deflate_and_inflate(text: str) -> str:
     return zlib.decompress(zlib.compress(text.encode())).decode()
 
 
-@shelf.add(
-    LINEAR, random_bytes, expected=lambda data: sum(data[::4]), tags="library allocator", reusable=True
-)
+@shelf.add(LINEAR, random_bytes, expected=lambda data: sum(data[::4]), tags="library allocator", reusable=True)
 def unpack_records(data: bytes) -> int:
     whole = len(data) // 4 * 4
     firsts = [record[0] for record in struct.iter_unpack("<BBBB", data[:whole])]
@@ -263,12 +252,7 @@ def pickle_and_back(values: list[int]) -> Any:
 
 
 def nested_records(n: int, rng: random.Random) -> Arguments:
-    return (
-        [
-            {"berth": i, "crew": [tons, tons + 1]}
-            for i, tons in enumerate(bulk(rng).integers(0, 99, n).tolist())
-        ],
-    )
+    return ([{"berth": i, "crew": [tons, tons + 1]} for i, tons in enumerate(bulk(rng).integers(0, 99, n).tolist())],)
 
 
 @shelf.add(
@@ -312,12 +296,7 @@ def merge_eight_runs(runs: list[list[float]]) -> list[float]:
 
 def statements(n: int, rng: random.Random) -> Arguments:
     return (
-        "".join(
-            [
-                f"berth_{i} = {value} + depth\n"
-                for i, value in enumerate(bulk(rng).integers(0, 99, n).tolist())
-            ]
-        ),
+        "".join([f"berth_{i} = {value} + depth\n" for i, value in enumerate(bulk(rng).integers(0, 99, n).tolist())]),
     )
 
 

@@ -53,9 +53,7 @@ def tides(n: int, rng: random.Random) -> Arguments:
     return (bulk(rng).integers(0, 3, n).tolist(),)
 
 
-@shelf.add(
-    LINEAR, tides, expected=lambda v: [(k, len(list(g))) for k, g in itertools.groupby(v)], reusable=True
-)
+@shelf.add(LINEAR, tides, expected=lambda v: [(k, len(list(g))) for k, g in itertools.groupby(v)], reusable=True)
 def run_lengths(values: list[int]) -> list[tuple[int, int]]:
     runs = []
     current, length = values[0], 0
@@ -242,9 +240,7 @@ def island_sizes(graph: list[list[tuple[int, float]]]) -> int:
     return len(seen)
 
 
-@shelf.add(
-    LINEAR, sparse_graph(4), expected=island_sizes, tags="bimodal cache", reusable=True, largest=400_000
-)
+@shelf.add(LINEAR, sparse_graph(4), expected=island_sizes, tags="bimodal cache", reusable=True, largest=400_000)
 def reach_from_first_vertex(graph: list[list[tuple[int, float]]]) -> int:
     reached = [False] * len(graph)
     reached[0] = True

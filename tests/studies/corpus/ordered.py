@@ -189,14 +189,11 @@ def longest_rising(values: list[int]) -> int:
     two_float_lists,
     tags="builtin",
     reusable=True,
-    expected=lambda starts, spans: max(
-        sum(s <= t < s + d for s, d in zip(starts, spans, strict=True)) for t in starts
-    ),
+    expected=lambda starts, spans: max(sum(s <= t < s + d for s, d in zip(starts, spans, strict=True)) for t in starts),
 )
 def berths_needed(starts: list[float], spans: list[float]) -> int:
     events = sorted(
-        [(start, 1) for start in starts]
-        + [(start + span, -1) for start, span in zip(starts, spans, strict=True)]
+        [(start, 1) for start in starts] + [(start + span, -1) for start, span in zip(starts, spans, strict=True)]
     )
     return max(itertools.accumulate(change for _, change in events))
 
@@ -206,9 +203,9 @@ def convex_hull(places: list[tuple[float, float]]) -> int:
     def chain(ordered: list[tuple[float, float]]) -> int:
         kept: list[tuple[float, float]] = []
         for x, y in ordered:
-            while len(kept) > 1 and (kept[-1][0] - kept[-2][0]) * (y - kept[-2][1]) <= (
-                kept[-1][1] - kept[-2][1]
-            ) * (x - kept[-2][0]):
+            while len(kept) > 1 and (kept[-1][0] - kept[-2][0]) * (y - kept[-2][1]) <= (kept[-1][1] - kept[-2][1]) * (
+                x - kept[-2][0]
+            ):
                 kept.pop()
             kept.append((x, y))
         return len(kept)
@@ -229,9 +226,7 @@ def code_tree_cost(weights: list[float]) -> float:
     return cost
 
 
-@shelf.add(
-    LOGLINEAR, integers, expected=sorted, tags="library large_constant", reusable=True, largest=200_000
-)
+@shelf.add(LOGLINEAR, integers, expected=sorted, tags="library large_constant", reusable=True, largest=200_000)
 def order_in_sqlite(values: list[int]) -> list[int]:
     with closing(sqlite3.connect(":memory:")) as database:
         database.execute("create table cargo (tons integer)")

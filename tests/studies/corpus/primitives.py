@@ -12,7 +12,7 @@ from .inputs import (
     Arguments,
     ascending,
     bulk,
-    bytes_without_255,
+    bytes_below_255,
     floats,
     integers,
     letters,
@@ -74,22 +74,20 @@ def mask_vowels(text: str) -> str:
     return text.translate({ord(vowel): "*" for vowel in "aeiou"})
 
 
-@shelf.add(
-    LINEAR, letters, expected=lambda text: "--".join(text.split("a")), tags="builtin strings", reusable=True
-)
+@shelf.add(LINEAR, letters, expected=lambda text: "--".join(text.split("a")), tags="builtin strings", reusable=True)
 def replace_letter(text: str) -> str:
     return text.replace("a", "--")
 
 
 @shelf.add(
     LINEAR,
-    bytes_without_255,
-    expected=lambda data, _: -1,
+    bytes_below_255,
+    expected=lambda data: -1,
     tags="builtin fast",
     reusable=True,
     largest=20_000_000,
 )
-def find_absent_byte(data: bytes, _: list[float]) -> int:
+def find_absent_byte(data: bytes) -> int:
     return data.find(255)
 
 
@@ -176,9 +174,7 @@ def nearly_ascending(n: int, rng: random.Random) -> Arguments:
     return (values,)
 
 
-@shelf.add(
-    LINEAR, nearly_ascending, expected=lambda values: sorted(values), tags="builtin presorted", reusable=True
-)
+@shelf.add(LINEAR, nearly_ascending, expected=lambda values: sorted(values), tags="builtin presorted", reusable=True)
 def sort_what_is_nearly_sorted(values: list[float]) -> list[float]:
     return sorted(values)
 
@@ -247,9 +243,7 @@ def double_in_comprehension(values: list[float]) -> list[float]:
     return [2 * value for value in values]
 
 
-@shelf.add(
-    LINEAR, lambda n, rng: floats(n, rng) * 2, expected=lambda one, other: True, tags="builtin", reusable=True
-)
+@shelf.add(LINEAR, lambda n, rng: floats(n, rng) * 2, expected=lambda one, other: True, tags="builtin", reusable=True)
 def lists_are_equal(one: list[float], other: list[float]) -> bool:
     return one == other
 

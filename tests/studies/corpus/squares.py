@@ -74,9 +74,7 @@ def selection_by_min(values: list[float]) -> list[float]:
 def common_by_memo(one: list[int], other: list[int]) -> int:
     longest = np.zeros((len(one) + 1, len(other) + 1), dtype=int)
     for i, j in itertools.product(range(len(one)), range(len(other))):
-        longest[i + 1, j + 1] = (
-            longest[i, j] + 1 if one[i] == other[j] else max(longest[i, j + 1], longest[i + 1, j])
-        )
+        longest[i + 1, j + 1] = longest[i, j] + 1 if one[i] == other[j] else max(longest[i, j + 1], longest[i + 1, j])
     return int(longest[-1, -1])
 
 
@@ -98,9 +96,7 @@ def edits_between(one: list[int], other: list[int]) -> int:
     for i, mine in enumerate(one, 1):
         table[i][0] = i
         for j, theirs in enumerate(other, 1):
-            table[i][j] = min(
-                table[i - 1][j] + 1, table[i][j - 1] + 1, table[i - 1][j - 1] + (mine != theirs)
-            )
+            table[i][j] = min(table[i - 1][j] + 1, table[i][j - 1] + 1, table[i - 1][j - 1] + (mine != theirs))
     return table[-1][-1]
 
 
@@ -138,9 +134,7 @@ def multiply_polynomials(one: list[float], other: list[float]) -> list[float]:
     return product
 
 
-@shelf.add(
-    QUADRATIC, floats, expected=lambda values: np.cumsum(values).tolist(), tags="builtin", reusable=True
-)
+@shelf.add(QUADRATIC, floats, expected=lambda values: np.cumsum(values).tolist(), tags="builtin", reusable=True)
 def sums_of_all_prefixes(values: list[float]) -> list[float]:
     return [sum(values[: end + 1]) for end in range(len(values))]
 
@@ -154,7 +148,7 @@ def sort_after_each_append(values: list[float]) -> list[float]:
     return ordered
 
 
-@shelf.add(QUADRATIC, lambda n, rng: (bulk(rng).integers(1, 50, n).tolist(), n), expected=None, reusable=True)
+@shelf.add(QUADRATIC, lambda n, rng: (bulk(rng).integers(1, n // 2 + 1, n).tolist(), n), expected=None, reusable=True)
 def fill_the_hold(weights: list[int], room: int) -> int:
     best = [0] * (room + 1)
     for weight in weights:
@@ -163,9 +157,7 @@ def fill_the_hold(weights: list[int], room: int) -> int:
     return best[room]
 
 
-@shelf.add(
-    QUADRATIC, lambda n, rng: ("a" * n,), expected=lambda text: None, tags="regex backtracking", reusable=True
-)
+@shelf.add(QUADRATIC, lambda n, rng: ("a" * n,), expected=lambda text: None, tags="regex backtracking", reusable=True)
 def pattern_that_backtracks(text: str) -> Any:
     return re.search("a+b", text)
 
@@ -187,9 +179,7 @@ def longest_by_slices(one: list[int], other: list[int]) -> int:
     return max(j - i for i in range(len(mine) + 1) for j in range(i, len(mine) + 1) if mine[i:j] in theirs)
 
 
-@shelf.add(
-    QUADRATIC, two_symbol_lists, tags="library slow", reusable=True, largest=3000, expected=longest_by_slices
-)
+@shelf.add(QUADRATIC, two_symbol_lists, tags="library slow", reusable=True, largest=3000, expected=longest_by_slices)
 def longest_match_by_difflib(one: list[int], other: list[int]) -> int:
     matcher = difflib.SequenceMatcher(None, one, other, autojunk=False)
     return matcher.find_longest_match(0, len(one), 0, len(other)).size

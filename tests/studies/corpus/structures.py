@@ -17,9 +17,7 @@ shelf = Shelf()
 PRIME = 2_147_483_647
 
 
-@shelf.add(
-    LINEAR, the_size, expected=lambda n: (pow(2, n + 1, PRIME) - 1) % PRIME, tags="memo resize", reusable=True
-)
+@shelf.add(LINEAR, the_size, expected=lambda n: (pow(2, n + 1, PRIME) - 1) % PRIME, tags="memo resize", reusable=True)
 def memo_table_of_sums(n: int) -> int:
     memo = {0: 1}
     total = 1
@@ -38,9 +36,7 @@ class Berth:
     depth: float
 
 
-@shelf.add(
-    LINEAR, floats, expected=lambda depths: (len(depths), sum(depths)), tags="allocator cache", reusable=True
-)
+@shelf.add(LINEAR, floats, expected=lambda depths: (len(depths), sum(depths)), tags="allocator cache", reusable=True)
 def make_objects(depths: list[float]) -> tuple[int, float]:
     berths = [Berth(name=f"berth {depth:.3f}", depth=depth) for depth in depths]
     return len(berths), sum(berth.depth for berth in berths)
@@ -62,9 +58,7 @@ def append_one_by_one(values: list[float]) -> int:
     return len(copied)
 
 
-@shelf.add(
-    LINEAR, integers, expected=lambda values: len(set(values)), tags="resize cache hash", reusable=True
-)
+@shelf.add(LINEAR, integers, expected=lambda values: len(set(values)), tags="resize cache hash", reusable=True)
 def index_by_number(values: list[int]) -> int:
     index = {}
     for place, value in enumerate(values):

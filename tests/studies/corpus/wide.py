@@ -109,9 +109,7 @@ def binomial_by_memo(n: int) -> int:
     memo = {(0, 0): 1}
     for row in range(1, n + 1):
         for column in range(row + 1):
-            memo[row, column] = (
-                memo.get((row - 1, column), 0) + memo.get((row - 1, column - 1), 0)
-            ) % 1_000_003
+            memo[row, column] = (memo.get((row - 1, column), 0) + memo.get((row - 1, column - 1), 0)) % 1_000_003
     return memo[n, n // 2]
 
 
@@ -122,8 +120,7 @@ def binomial_by_memo(n: int) -> int:
     reusable=True,
     largest=1000,
     expected=lambda places: [
-        min(range(len(places)), key=lambda i: (math.dist(p, places[i]) == 0, math.dist(p, places[i])))
-        for p in places
+        min(range(len(places)), key=lambda i: (math.dist(p, places[i]) == 0, math.dist(p, places[i]))) for p in places
     ],
 )
 def neighbours_by_sorting_distances(places: list[tuple[float, float]]) -> list[int]:
@@ -177,9 +174,7 @@ def shortest_ways_from_everywhere(graph: list[list[tuple[int, float]]]) -> int:
     tags="builtin allocator",
     reusable=True,
     largest=1000,
-    expected=lambda values: [
-        a for _, a in sorted(((a + b, a) for a in values for b in values), key=itemgetter(0))
-    ][:3],
+    expected=lambda values: [a for _, a in sorted(((a + b, a) for a in values for b in values), key=itemgetter(0))][:3],
 )
 def sort_all_pair_sums(values: list[float]) -> list[float]:
     pairs = [(one + other, one) for one in values for other in values]
