@@ -5,7 +5,7 @@ from __future__ import annotations
 import random
 from typing import Any
 
-import networkx
+import networkx  # type: ignore[import-untyped]
 import numpy as np
 
 from .entry import CUBIC, LINEAR, LOGLINEAR, Shelf

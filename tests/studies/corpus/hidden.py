@@ -218,7 +218,7 @@ def copy_buffer_for_each_record(data: bytes) -> list[int]:
 @shelf.add(
     QUADRATIC,
     bytes_and_floats,
-    expected=lambda data, values: sum(len(repr(value)) + 13 for value in values),
+    expected=lambda data, values: sum(len(repr(value)) + 11 for value in values),
     dominates=False,
     tags="hidden fast library",
     reusable=True,
@@ -226,7 +226,7 @@ def copy_buffer_for_each_record(data: bytes) -> list[int]:
 def write_record_and_scan_bytes(data: bytes, values: list[float]) -> int:
     written = 0
     for value in values:
-        written += len(json.dumps({"depth": value, "": 0})) - 7
+        written += len(json.dumps({"depth": value}))
         written += data.find(255) + 1
     return written
 

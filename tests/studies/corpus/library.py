@@ -242,7 +242,7 @@ def deflate_and_inflate(text: str) -> str:
 @shelf.add(LINEAR, random_bytes, expected=lambda data: sum(data[::4]), tags="library allocator", reusable=True)
 def unpack_records(data: bytes) -> int:
     whole = len(data) // 4 * 4
-    firsts = [record[0] for record in struct.iter_unpack("<BBBB", data[:whole])]
+    firsts: list[int] = [record[0] for record in struct.iter_unpack("<BBBB", data[:whole])]
     return sum(firsts) + (data[whole] if whole < len(data) else 0)
 
 
