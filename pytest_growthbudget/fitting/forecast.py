@@ -1,0 +1,203 @@
+"""What the fit says beyond the verdict: cost at other sizes, the nearest simple growth, where the cost bends away."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Sequence
+from typing import Final
+
+import numpy as np
+
+from pytest_growthbudget.fitting.excess import (
+    WALK_SHARES,
+    Array,
+    Mixture,
+    Observations,
+    fit_lines,
+    local_exponent,
+    walk,
+    whitened,
+)
+from pytest_growthbudget.fitting.judgement import ForecastRow, Interval
+
+LogGrowth = Callable[[float], float]
+
+#: Simple growths by name, as natural logs.
+SIMPLE_GROWTHS: Final[tuple[tuple[str, LogGrowth], ...]] = (
+    ("1", lambda n: 0.0),
+    ("log n", lambda n: math.log(math.log(n))),
+    ("sqrt n", lambda n: 0.5 * math.log(n)),
+    ("n", lambda n: math.log(n)),
+    ("n log n", lambda n: math.log(n) + math.log(math.log(n))),
+    ("n^1.5", lambda n: 1.5 * math.log(n)),
+    ("n^2", lambda n: 2 * math.log(n)),
+    ("n^2 log n", lambda n: 2 * math.log(n) + math.log(math.log(n))),
+    ("n^3", lambda n: 3 * math.log(n)),
+    ("n^4", lambda n: 4 * math.log(n)),
+)
+MULTIPLES: Final = (2, 10, 100)
+AHEAD: Final = math.log(1.25)
+_STEEP: Final = 3.5
+_GREATEST_LOG_COST: Final = math.log(1e21)
+_WIDEST: Final = 1.0
+
+
+def forecast_cost(
+    seen: Observations, log_growth: LogGrowth, size: float, *, exponential: bool, confidence: float, noise: float
+) -> Interval:
+    """The cost expected at a larger size, with the interval that holds it with probability `confidence`.
+
+    The prediction of each line is that of universal kriging (Cressie 1993, "Statistics for Spatial Data", section
+    3.4 [from memory]): the walk goes on from where the largest size left it, so the interval widens with the
+    distance. The lines are averaged as for the excess. The white noise of a single reading is left out.
+    """
+    low, middle, high = _log_cost(seen, log_growth, size, exponential=exponential, noise=noise).quantiles(
+        ((1 - confidence) / 2, 0.5, (1 + confidence) / 2)
+    )
+    return Interval(estimate=_exp(middle), low=_exp(low), high=_exp(high))
+
+
+def _log_cost(seen: Observations, log_growth: LogGrowth, size: float, *, exponential: bool, noise: float) -> Mixture:
+    lines = fit_lines(seen, noise)
+    plain = lines.kind < 2
+    allowed = log_growth(size)
+    at = np.array([allowed if exponential else math.log(size)])
+    ahead = float(at[0] - seen.regressor[-1])
+    one, tilt, target = lines.one[plain], lines.tilt[plain], lines.target[plain]
+    level, slope, rss, det = lines.level[plain], lines.slope[plain], lines.rss[plain], lines.det[plain]
+
+    leading = level + slope * ahead + allowed
+    offset = (seen.costs - lines.left[plain])[:, :1]
+    log_cost = np.logaddexp(leading, np.log(np.maximum(offset, 1e-300)))
+    share = np.exp(leading - log_cost)
+
+    covariance = WALK_SHARES[:, None] * walk(seen.regressor, at, seen.regressor)[:, 0]
+    carried = whitened(seen.regressor, covariance)
+    residual = target - level[..., None] * one - slope[..., None] * tilt
+    centre = log_cost + (residual * carried).sum(-1)
+
+    unexplained = WALK_SHARES * walk(at, at, seen.regressor)[0, 0] - (carried * carried).sum(-1)
+    a1 = share - (one * carried).sum(-1)
+    a2 = share * ahead - (tilt * carried).sum(-1)
+    s11, s12, s22 = (one * one).sum(-1), (one * tilt).sum(-1), (tilt * tilt).sum(-1)
+    spread = (a1 * a1 * s22 - 2 * a1 * a2 * s12 + a2 * a2 * s11) / det
+    scale = np.sqrt(rss / lines.freedom * np.maximum(unexplained + spread, 1e-12))
+    weights = lines.weights()[plain]
+    return Mixture(centre.ravel(), scale.ravel(), weights.ravel() / weights.sum(), lines.freedom)
+
+
+def allowed_cost(seen: Observations, log_growth: LogGrowth, size: float) -> float:
+    """The cost that the budget allows at a size, scaled from the smallest third of the sizes (three at least)."""
+    return _exp(_scale(seen) + log_growth(size))
+
+
+def _scale(seen: Observations) -> float:
+    few = max(3, len(seen) // 3)
+    return float(np.median((np.log(seen.costs) - seen.log_growth)[:few]))
+
+
+def forecast(
+    seen: Observations, log_growth: LogGrowth, *, exponential: bool, confidence: float, noise: float
+) -> tuple[ForecastRow, ...]:
+    """Forecasts at a few multiples of the largest size, as far as the cost stays below 30 thousand years."""
+    rows = []
+    for size in forecast_sizes(int(seen.sizes[-1]), exponential=exponential):
+        log_cost = _log_cost(seen, log_growth, size, exponential=exponential, noise=noise)
+        if log_cost.quantiles((0.5,))[0] > _GREATEST_LOG_COST:
+            break
+        rows.append(
+            ForecastRow(
+                size=size,
+                cost=forecast_cost(seen, log_growth, size, exponential=exponential, confidence=confidence, noise=noise),
+                allowed=allowed_cost(seen, log_growth, size),
+            )
+        )
+    return tuple(rows)
+
+
+def forecast_sizes(largest: int, *, exponential: bool) -> tuple[int, ...]:
+    """Sizes beyond the largest, to two significant digits; a few steps further where each step multiplies the cost."""
+    if exponential:
+        return (largest + 5, largest + 10, largest + 20)
+    return tuple(_two_digits(largest * multiple) for multiple in MULTIPLES)
+
+
+def _two_digits(size: int) -> int:
+    unit: int = 10 ** max(len(str(size)) - 2, 0)
+    return round(size / unit) * unit
+
+
+def local_exponents(sizes: Sequence[int], costs: Sequence[float]) -> tuple[float | None, ...]:
+    """The exponent of the cost about each size: the slope between its neighbours, one-sided at the ends."""
+    x, y = np.log(np.asarray(sizes, dtype=float)), np.log(np.asarray(costs, dtype=float))
+    if len(x) < 2:
+        return (None,) * len(x)
+    before = np.maximum(np.arange(len(x)) - 1, 0)
+    after = np.minimum(np.arange(len(x)) + 1, len(x) - 1)
+    return tuple(((y[after] - y[before]) / (x[after] - x[before])).tolist())
+
+
+def bends_at(seen: Observations) -> int | None:
+    """The first size from which on the cost is more than a quarter above the lowest that it ever was, against growth.
+
+    None where it never is, or not to the end.
+    """
+    ahead = _smooth(np.log(seen.costs) - seen.log_growth)
+    above = ahead - ahead.min() > AHEAD
+    above[: int(ahead.argmin()) + 1] = False
+    if not above[-1]:
+        return None
+    first = len(above) - int(np.argmin(above[::-1]))
+    return int(seen.sizes[first])
+
+
+def _smooth(values: Array) -> Array:
+    """The running median of three."""
+    if len(values) < 3:
+        return values
+    inner = np.median(np.stack((values[:-2], values[1:-1], values[2:])), axis=0)
+    return np.concatenate((values[:1], inner, values[-1:]))
+
+
+def nearest_growth(seen: Observations, exponent: Interval) -> str | None:
+    """The simple growth whose exponent over these sizes is nearest to the one measured; None where that is vague.
+
+    Where the cost is so steep that a constant factor a step of n fits better than a power, it is named as that.
+    """
+    x, y = np.log(seen.sizes), np.log(seen.costs)
+    if exponent.estimate > _STEEP and _misfit(seen.sizes, y) < _misfit(x, y):
+        base = math.exp(min(float(np.polyfit(seen.sizes, y, 1)[0]), 50.0))
+        return f"{base:.2g}^n"
+    if exponent.high - exponent.low > _WIDEST:
+        return None
+    if exponent.estimate > 4.25:
+        return growth_text(exponent.estimate)
+    known = [(name, growth) for name, growth in SIMPLE_GROWTHS if "log" not in name or seen.sizes[0] > math.e]
+
+    def distance(growth: LogGrowth) -> float:
+        values = np.array([growth(size) for size in seen.sizes.tolist()])
+        return abs(float(np.polyfit(x, values, 1)[0]) - exponent.estimate)
+
+    return min(known, key=lambda each: distance(each[1]))[0]
+
+
+def _misfit(regressor: Array, y: Array) -> float:
+    line = np.polyfit(regressor, y, 1)
+    return float(((y - np.polyval(line, regressor)) ** 2).sum())
+
+
+def growth_text(exponent: float) -> str:
+    """An exponent as text: `n^1.97`; `n` or a constant only where it is that to two decimals."""
+    rounded = round(exponent, 2)
+    if rounded == 0:
+        return "1"
+    return "n" if rounded == 1 else f"n^{rounded:.2f}"
+
+
+def allowed_exponent(log_growth: LogGrowth, size: float) -> float:
+    """The local exponent that the budget allows at a size."""
+    return local_exponent(log_growth, size)
+
+
+def _exp(value: float) -> float:
+    return math.exp(min(max(value, -700.0), 700.0))

@@ -1,0 +1,65 @@
+"""Why a verdict is what it is: whole sentences without numbers of their own making."""
+
+from __future__ import annotations
+
+from typing import Final
+
+from pytest_growthbudget.fitting.evidence import Evidence
+from pytest_growthbudget.fitting.judgement import Interval
+from pytest_growthbudget.fitting.verdict import Limits
+from pytest_growthbudget.measuring.readings import Ladder
+
+UNCONFIRMED: Final = "one set of readings is above the slack, and a second set did not agree"
+SUSPICIOUS: Final = "the excess is small, but too surely above zero for the budget to be called kept"
+AHEAD: Final = "the sizes read keep the budget, but one much larger size costs more than they foretell"
+NO_CURVE: Final = (
+    "the cost is above the slack, but how much of that is the memory of this machine is not known, "
+    "so it cannot be called exceeded"
+)
+
+_SHORT_OF: Final = {
+    "": "the cost soon grows too dear to go further; use a smaller `smallest`",
+    "largest": "`largest` is too near to the smallest size that can be read; raise `largest` or lower `smallest`",
+    "time": "the time limit ended the climb; raise `time_limit` or lower `smallest`",
+    "memory": "the workload grew too large for memory; lower `smallest`, or let the workload hold less",
+    "failed": "the body failed at the next size; lower `largest` to below that size",
+    "runaway": "the next call ran away and was stopped; lower `smallest`, or look at that call first",
+}
+TOO_FAST: Final = (
+    "no call lasts long enough for the clock (5 us); give the workload a module scope so that calls can be "
+    "repeated in one reading, do more work in a call, raise `largest`, or use the `steps` meter"
+)
+
+
+def over(evidence: Evidence) -> str:
+    """The sizes of the evidence: `n = 12 to 4096`."""
+    return f"n = {evidence.seen.sizes[0]:.0f} to {evidence.seen.sizes[-1]:.0f}"
+
+
+def within(evidence: Evidence, limits: Limits, *, deflated: bool) -> str:
+    memory = ", once memory is allowed for," if deflated else ""
+    return f"over {over(evidence)} the excess{memory} is below the limit of {limits.within:.2f}"
+
+
+def exceeded(evidence: Evidence, excess: Interval, limits: Limits, *, confirmed: bool) -> str:
+    agreed = "and a second set of readings agrees" if confirmed else "and the first calls at each size agree"
+    return (
+        f"over {over(evidence)} the excess is at least {excess.low:.2f}, "
+        f"above the slack of {limits.exceeded:.2f}, {agreed}"
+    )
+
+
+def wide(evidence: Evidence, excess: Interval, limits: Limits) -> str:
+    return (
+        f"over {over(evidence)} the excess lies between {excess.low:.2f} and {excess.high:.2f}: "
+        f"neither surely above {limits.exceeded:.2f} nor surely below {limits.within:.2f}"
+    )
+
+
+def too_few(ladder: Ladder, count: int, needed: int) -> str:
+    sizes = "no size" if count == 0 else "only 1 size" if count == 1 else f"only {count} sizes"
+    return f"{sizes} could be read where {needed} are needed: {_SHORT_OF.get(ladder.ended, _SHORT_OF[''])}"
+
+
+def out_of_time(reason: str) -> str:
+    return f"the time limit ended the readings before they could decide ({reason}); raise `time_limit`"
