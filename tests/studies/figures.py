@@ -3,34 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
 
 import numpy as np
-from scipy.special import betaincinv
 
 from tests.studies.one_case import RECIPE_THRESHOLD, Outcome
+from tests.studies.rate import Rate
 
 MB = 2.0**20
-
-
-@dataclass(frozen=True, slots=True, kw_only=True)
-class Rate:
-    """`hits` of `tries`; prints as a share with the 95 % upper limit of Clopper and Pearson (1934) [from memory]."""
-
-    hits: int
-    tries: int
-
-    @property
-    def share(self) -> float:
-        return self.hits / self.tries if self.tries else float("nan")
-
-    @property
-    def at_most(self) -> float:
-        """The one-sided 95 % upper limit; with no hits it is the rule of three, 3 / tries."""
-        return float(betaincinv(self.hits + 1, self.tries - self.hits, 0.95)) if self.hits < self.tries else 1.0
-
-    def __str__(self) -> str:
-        return f"{100 * self.share:.1f} % ({self.hits} of {self.tries})" if self.tries else "none"
 
 
 def rate(outcomes: Sequence[Outcome], hit: Callable[[Outcome], bool]) -> Rate:
