@@ -20,6 +20,7 @@ from harbour.soundings import Sounding
 from harbour.tides import TideTable
 
 PORTS = ("Northhaven", "Saltby", "Oyster Point", "Kelp Sound", "Farsund", "Millmouth", "Greyness", "Long Mole")
+CONTENTS = "machine parts in crates, not to be stacked, to be kept dry, value as by invoice"
 LOOK_UPS = 200
 HALF_TIDE = 372.5  # minutes between high and low water
 
@@ -56,7 +57,7 @@ def repeated_ids(problem_size: int, workload_rng: Random) -> list[str]:
 @pytest.fixture
 def manifest_text(problem_size: int, workload_rng: Random) -> str:
     return "".join(
-        f"{container_id(workload_rng)};{workload_rng.choice(PORTS)};{workload_rng.randrange(2, 31)}\n"
+        f"{container_id(workload_rng)};{workload_rng.choice(PORTS)};{workload_rng.randrange(2, 31)};{CONTENTS}\n"
         for _ in range(problem_size)
     )
 
@@ -64,7 +65,7 @@ def manifest_text(problem_size: int, workload_rng: Random) -> str:
 @pytest.fixture
 def manifest_lines(problem_size: int) -> Iterator[str]:
     """Lines as they come down the wire: nobody holds them all."""
-    return (f"HRBU{line:07};{PORTS[line % len(PORTS)]};7\n" for line in range(problem_size))
+    return (f"HRBU{line:07};{PORTS[line % len(PORTS)]};7;{CONTENTS}\n" for line in range(problem_size))
 
 
 @pytest.fixture

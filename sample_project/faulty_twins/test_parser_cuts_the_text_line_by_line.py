@@ -9,8 +9,8 @@ def read_manifest(text: str) -> list[Consignment]:
     consignments = []
     while text:
         end = text.index("\n")
-        container, port, tonnes = text[:end].split(";")
-        consignments.append(Consignment(container, port, int(tonnes)))
+        container, port, tonnes, contents = text[:end].split(";")
+        consignments.append(Consignment(container, port, int(tonnes), contents))
         text = text[end + 1 :]
     return consignments
 
@@ -19,4 +19,4 @@ def test_every_line_becomes_a_consignment(manifest_text: str, problem_size: int)
     consignments = read_manifest(manifest_text)
     assert len(consignments) == problem_size
     assert manifest_text.startswith(consignments[0].container)
-    assert manifest_text.endswith(f"{consignments[-1].tonnes}\n")
+    assert manifest_text.endswith(f"{consignments[-1].contents}\n")

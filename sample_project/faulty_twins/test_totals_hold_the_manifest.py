@@ -13,7 +13,7 @@ def tonnes_by_port(lines: Iterable[str]) -> dict[str, int]:
     return {port: sum(int(field[2]) for field in group) for port, group in groupby(fields, lambda field: field[1])}
 
 
-@pytest.mark.growth_budget("1", meter="peak_memory")
+@pytest.mark.growth_budget("1", meter="peak_memory", smallest=16)
 def test_totals_are_taken_without_holding_the_manifest(manifest_lines: Iterator[str], problem_size: int) -> None:
     totals = tonnes_by_port(manifest_lines)
     assert sum(totals.values()) == 7 * problem_size
