@@ -1,0 +1,178 @@
+"""What the plugin costs: `python -m tests.studies.bench_plugin`.
+
+Prints, all measured in one run: seconds added to 500 unmarked tests, plugin time per reading beyond workload and
+body, time of one fit, and seconds to verdict for clear cases.
+"""
+
+from __future__ import annotations
+
+import re
+import statistics
+import subprocess
+import sys
+import tempfile
+import time
+from pathlib import Path
+
+PLAIN = "\n".join(f"def test_{number}():\n    assert True\n" for number in range(500))
+
+CLEAR = """
+import pytest
+
+@pytest.fixture
+def numbers(problem_size, workload_rng):
+    return [workload_rng.random() for _ in range(problem_size)]
+
+@pytest.mark.growth_budget("n")
+def test_sum_is_linear(numbers):
+    total = 0.0
+    for number in numbers:
+        total += number
+
+@pytest.mark.growth_budget("n log n")
+def test_sort(numbers):
+    sorted(numbers)
+
+@pytest.mark.growth_budget("n")
+def test_set(numbers):
+    {round(number * 1000) for number in numbers}
+
+@pytest.mark.growth_budget("n")
+def test_quadratic_is_not_linear(numbers):
+    seen = []
+    for number in numbers:
+        if number not in seen:
+            seen.append(number)
+
+@pytest.mark.growth_budget("n")
+def test_pairs_are_not_linear(numbers):
+    sum(1 for a in numbers for b in numbers if a < b)
+
+@pytest.mark.growth_budget("n")
+def test_exponential_is_not_linear(problem_size):
+    def calls(n):
+        return 1 if n < 2 else calls(n - 1) + calls(n - 2)
+    calls(problem_size)
+
+@pytest.mark.growth_budget("n^2")
+def test_pairs(numbers):
+    sum(1 for a in numbers for b in numbers if a < b)
+"""
+
+PER_READING = '''
+import pytest
+from pytest_growthbudget import trial
+
+@pytest.fixture
+def workload(problem_size):
+    return problem_size
+
+@pytest.mark.growth_budget("n")
+def test_nothing(workload):
+    pass
+
+def test_report():
+    from pytest_growthbudget.workloads.repeat import Repeater
+'''
+
+READER = '''
+import statistics, sys
+import pytest
+from pytest_growthbudget import trial
+from pytest_growthbudget.measuring.guards import Watch
+from pytest_growthbudget.meters.clocks import CpuTime, wall_time_ns
+from pytest_growthbudget.workloads.repeat import Repeater, collector_spared, warnings_apart
+
+
+def time_readings(item):
+    meter = CpuTime()
+    repeater = Repeater(item, lambda size: {"problem_size": size}, Watch(60))
+    with collector_spared(), warnings_apart():
+        spent = []
+        for number in range(3000):
+            before = wall_time_ns()
+            repeater.take(100, meter, 1)
+            spent.append(wall_time_ns() - before)
+    print("PER READING", statistics.median(spent) / 1e3)
+
+
+trial.hold = time_readings
+sys.exit(pytest.main(["-q", "-s", "-p", "no:cacheprovider", "test_reading.py"]))
+'''
+
+
+def seconds_of(command: list[str], folder: Path) -> float:
+    start = time.perf_counter()
+    subprocess.run(command, cwd=folder, check=True, capture_output=True)
+    return time.perf_counter() - start
+
+
+def plain_run(folder: Path, repeats: int = 9) -> None:
+    (folder / "test_plain.py").write_text(PLAIN)
+    base = [sys.executable, "-m", "pytest", "-q", "-p", "no:cacheprovider", "test_plain.py"]
+    with_plugin, without = [], []
+    for _ in range(repeats):
+        without.append(seconds_of([*base, "-p", "no:growthbudget"], folder))
+        with_plugin.append(seconds_of(base, folder))
+    added = statistics.median(a - b for a, b in zip(with_plugin, without, strict=True))
+    spread = statistics.stdev(without)
+    print(f"500 unmarked tests: {statistics.median(without):.3f} s without the plugin; the plugin adds")
+    print(f"    {1e3 * added:+.1f} ms (median of {repeats} pairs; run to run the plain suite varies by {1e3 * spread:.0f} ms)")
+
+
+def reading(folder: Path) -> None:
+    (folder / "test_reading.py").write_text(PER_READING)
+    (folder / "read.py").write_text(READER)
+    run = subprocess.run([sys.executable, "read.py"], cwd=folder, capture_output=True, text=True, check=False)
+    found = re.search(r"PER READING ([\d.]+)", run.stdout)
+    print(f"plugin time per reading: {found.group(1) if found else run.stdout} us (median of 3000, empty body)")
+
+
+def one_fit() -> None:
+    import numpy as np
+
+    from pytest_growthbudget.fitting import excess
+
+    rng = np.random.default_rng(1)
+    sizes = 100 * 2 ** np.arange(0, 8, 0.5)
+    costs = 50.0 * sizes * np.exp(rng.normal(0, 0.03, len(sizes)))
+    spent = []
+    for _ in range(60):
+        start = time.perf_counter()
+        excess.fit_excess(excess.observe(sizes, costs, np.log)).delta.interval()
+        spent.append(time.perf_counter() - start)
+    print(f"one fit over {len(sizes)} sizes: {1e3 * statistics.median(spent):.2f} ms (median of 60)")
+
+
+def clear_cases(folder: Path) -> None:
+    (folder / "test_clear.py").write_text(CLEAR)
+    run = subprocess.run(
+        [sys.executable, "-m", "pytest", "-v", "-rA", "test_clear.py"],
+        cwd=folder,
+        capture_output=True,
+        text=True,
+        check=False,
+    )
+    cases = re.findall(
+        r"^_+ (test_\w+) _+$.*?^growth budget (\w+): .*?measured in ([\d.]+) (m?s)\)", run.stdout, re.S | re.M
+    )
+    spent = []
+    print("clear cases:")
+    for name, verdict, amount, unit in cases:
+        spent.append(float(amount) / (1000 if unit == "ms" else 1))
+        print(f"    {name:34} {verdict:10} {spent[-1]:.2f} s")
+    if spent:
+        print(f"    median {statistics.median(spent):.2f} s")
+
+
+def main() -> None:
+    with tempfile.TemporaryDirectory() as name:
+        folder = Path(name)
+        plain_run(folder)
+        reading(folder)
+        one_fit()
+        clear_cases(folder)
+
+
+if __name__ == "__main__":
+    main()
