@@ -21,7 +21,7 @@ CLOCK_SLACK: Final = 0.15
 FLAT_GAMMA: Final = 0.2
 TOP_SIZES: Final = 10
 TOP_FOOTPRINT: Final = 2 * 2.0**20
-CHEAP_UNIT: Final = 6.0
+CHEAP_UNITS: Final = 2.0
 CHEAP_GAMMA: Final = 0.9
 CHEAP_SIZES: Final = 7
 RESIDENT: Final = 2.0**20
@@ -158,7 +158,7 @@ def exceeds(evidence: Evidence, limit: float, limits: Limits, curve: Callable[[]
     if known is None or evidence.allowed is None:
         return exceeds_uncurved(evidence, limit, limits)
     if is_cheap(evidence, known):
-        # No kernel is as cheap as this body, so none can say what memory adds to it once it leaves the caches.
+        # No kernel is so cheap as this body, so none can say what memory multiplies it by outside the caches.
         evidence = evidence.up_to(known.resident)
         if len(evidence) < CHEAP_SIZES:
             return Says.NO
@@ -169,11 +169,11 @@ def exceeds(evidence: Evidence, limit: float, limits: Limits, curve: Callable[[]
 
 
 def is_cheap(evidence: Evidence, curve: MemoryCurve) -> bool:
-    """Whether a body outside the caches costs less per unit of growth than any kernel of the curve."""
+    """Whether a body outside the caches costs less per unit of growth than two elements of the cheapest kernel."""
     return (
         evidence.footprint > curve.resident
         and evidence.gamma >= CHEAP_GAMMA
-        and evidence.unit_cost() < curve.cheapest / 2
+        and evidence.unit_cost() < CHEAP_UNITS * curve.cheapest
     )
 
 
