@@ -89,8 +89,11 @@ def judged(cases: Sequence[Case], options: argparse.Namespace) -> Iterator[Outco
     with ProcessPoolExecutor(options.jobs, get_context("spawn"), initializer=memory_curve) as pool:
         running: set[Future[Outcome]] = set()
         while True:
-            while len(running) < options.jobs and time.monotonic() < ends and (case := next(waiting, None)):
-                running.add(pool.submit(judge, case))
+            while len(running) < options.jobs and time.monotonic() < ends:
+                upcoming = next(waiting, None)
+                if upcoming is None:
+                    break
+                running.add(pool.submit(judge, upcoming))
             if not running:
                 return
             done, running = wait(running, return_when=FIRST_COMPLETED)

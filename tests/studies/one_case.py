@@ -3,14 +3,14 @@
 from __future__ import annotations
 
 import random
-from collections.abc import Callable, Generator, Iterable, Sequence
+from collections.abc import Callable, Generator, Iterable, Mapping, Sequence
 from dataclasses import asdict, dataclass, field
 from functools import cache
 from typing import Any, Literal
 
 import numpy as np
-from pytest_growthbudget.bounds.budget import parse_budget
 
+from pytest_growthbudget.bounds.budget import parse_budget
 from pytest_growthbudget.fitting.evidence import lower_quartile
 from pytest_growthbudget.fitting.excess import FEWEST_SIZES, fit_excess, observe
 from pytest_growthbudget.fitting.judgement import Finding
@@ -288,7 +288,7 @@ def rows_of(ear: Ear, ladder: Ladder | None) -> list[list[float]]:
 
 
 def hand_recipe(
-    costs: dict[int, Sequence[float]] | dict[int, tuple[float, ...]],
+    costs: Mapping[int, Sequence[float]],
     log_growth: Callable[[float], float],
     *,
     exponential: bool,

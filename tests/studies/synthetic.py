@@ -65,13 +65,15 @@ def ramp(n: Array, draw: np.random.Generator) -> Array:
     """A cache that is left somewhere along the ladder: up to 3.5 times as dear beyond."""
     height = draw.uniform(np.log(1.2), np.log(3.5))
     place = draw.uniform(0.2, 1.0) * np.log(n[-1] / n[0])
-    return np.exp(height / (1 + np.exp(-(np.log(n / n[0]) - place) / 0.5)))
+    factor: Array = np.exp(height / (1 + np.exp(-(np.log(n / n[0]) - place) / 0.5)))
+    return factor
 
 
 def sawtooth(n: Array, draw: np.random.Generator) -> Array:
     """A table that doubles: dear just after, cheap just before."""
     depth, phase = draw.uniform(0.05, 0.4), draw.random()
-    return 1 + depth * (1 - np.mod(np.log2(n) + phase, 1.0))
+    factor: Array = 1 + depth * (1 - np.mod(np.log2(n) + phase, 1.0))
+    return factor
 
 
 FAMILIES: dict[str, Family] = {

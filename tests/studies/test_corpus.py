@@ -6,8 +6,9 @@ import math
 import random
 from collections.abc import Mapping, Sequence
 from collections.abc import Set as AbstractSet
+from typing import Any
 
-import networkx
+import networkx  # type: ignore[import-untyped]
 import numpy as np
 import pytest
 
@@ -17,7 +18,7 @@ from tests.studies.one_case import growth_of
 every_entry = pytest.mark.parametrize("entry", CORPUS, ids=lambda entry: entry.name)
 
 
-def agree(one: object, other: object) -> bool:
+def agree(one: Any, other: Any) -> bool:
     """Whether two answers are the same but for the rounding of floats; sets and arrays compare as lists."""
     if isinstance(one, np.ndarray):
         return agree(one.tolist(), other)
@@ -26,11 +27,11 @@ def agree(one: object, other: object) -> bool:
     if isinstance(one, AbstractSet) and not isinstance(other, AbstractSet):
         return agree(sorted(one), other)
     if isinstance(one, (float, np.floating)) or isinstance(other, (float, np.floating)):
-        return math.isclose(one, other, rel_tol=1e-7, abs_tol=1e-9)  # type: ignore[call-overload]
+        return math.isclose(one, other, rel_tol=1e-7, abs_tol=1e-9)
     if isinstance(one, networkx.Graph):
         return bool(networkx.utils.graphs_equal(one, other))
     if isinstance(one, complex):
-        return abs(one - complex(other)) <= 1e-7 * max(1.0, abs(one))  # type: ignore[call-overload]
+        return bool(abs(one - complex(other)) <= 1e-7 * max(1.0, abs(one)))
     if isinstance(one, Mapping) and isinstance(other, Mapping):
         return one.keys() == other.keys() and all(agree(one[key], other[key]) for key in one)
     if isinstance(one, Sequence) and not isinstance(one, (str, bytes)):
@@ -39,7 +40,7 @@ def agree(one: object, other: object) -> bool:
             and len(one) == len(other)
             and all(agree(left, right) for left, right in zip(one, other, strict=True))
         )
-    return one == other
+    return bool(one == other)
 
 
 def two_sizes(entry: Entry) -> tuple[int, int]:
