@@ -81,7 +81,8 @@ def checked_meters(meters: Iterable[object]) -> dict[str, Meter]:
 
 
 def _checked(meter: object) -> Meter:
-    what = f"the meter {getattr(meter, 'name', None) or meter!r}"
+    name = getattr(meter, "name", None)
+    what = f"the meter {meter if name is None else name!r}"
     if isinstance(meter, type):
         raise MeterError(f"{what} is a class. Return an instance of it: {meter.__name__}().")
     for attribute, kind in (("name", str), ("unit", str), ("deterministic", bool)):
@@ -100,7 +101,7 @@ def _checked(meter: object) -> Meter:
 
 def _unknown(name: object, own: Iterable[str]) -> str:
     known = [*_BUILT_IN, f"{_TALLY}NAME", *own]
-    near = difflib.get_close_matches(str(name).lower().replace("-", "_"), [*known, "tally"], n=1, cutoff=0.5)
+    near = difflib.get_close_matches(str(name).lower().replace("-", "_"), [*known, "tally"], n=1, cutoff=0.6)
     nearest = f"Did you mean {near[0].replace('tally:NAME', 'tally')!r}?" if near else ""
     if near and near[0] in ("tally", f"{_TALLY}NAME"):
         nearest = "Did you mean 'tally:NAME', as in 'tally:comparisons'?"

@@ -129,7 +129,7 @@ def test_a_shuffled_sequence_uses_the_generator():
 
 @pytest.mark.parametrize("over", range(4))
 def test_the_median_of_three_adversary_is_quadratic_at_every_size(over):
-    """About n**2 / 5 comparisons: measured here; that the count is quadratic is Musser 1997, theorem 1 [from memory]."""
+    """About n**2 / 5 comparisons, measured here; that it is quadratic is Musser 1997, section 2 [from memory]."""
     adversary, shuffled = shapes.SHAPES["median_of_three_adversary"], shapes.SHAPES["shuffled"]
     for n in (400 + over, 1600 + over):
         count = comparisons(quicksort, adversary(n, rng()))
