@@ -22,10 +22,15 @@ from pytest_growthbudget.workloads.fixtures import (
 )
 from pytest_growthbudget.workloads.repeat import GrowthItem
 
-
 __all__ = ["metered", "problem_size", "tally", "workload_rng"]
 
 settings_key = pytest.StashKey[settings_module.Settings]()
+
+
+def pytest_addhooks(pluginmanager: pytest.PytestPluginManager) -> None:
+    from pytest_growthbudget import hookspecs
+
+    pluginmanager.add_hookspecs(hookspecs)
 
 
 def pytest_addoption(parser: pytest.Parser) -> None:

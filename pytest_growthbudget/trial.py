@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import statistics
 from collections.abc import Callable
-from dataclasses import asdict
+from dataclasses import asdict, replace
 from typing import TYPE_CHECKING
 
 import pytest
@@ -13,9 +14,11 @@ from pytest_growthbudget.measuring.campaign import Campaign, Limits
 from pytest_growthbudget.measuring.guards import Watch
 from pytest_growthbudget.measuring.readings import MemoryCurve, Promise, Reading
 from pytest_growthbudget.meters import clocks
-from pytest_growthbudget.meters.protocol import Meter, MeterError
-from pytest_growthbudget.meters.registry import meter_for
+from pytest_growthbudget.meters.protocol import Meter, MeterError, checked_cost, close_meter, notes_of
 from pytest_growthbudget.reporting.wire import to_wire
+from pytest_growthbudget.workloads.collect import meter_of
+from pytest_growthbudget.workloads.fixtures import shared_key
+from pytest_growthbudget.workloads.rays import Ray, rays
 from pytest_growthbudget.workloads.repeat import (
     BodyFailed,
     GrowthItem,
@@ -27,9 +30,11 @@ from pytest_growthbudget.workloads.repeat import (
 if TYPE_CHECKING:
     from pytest_growthbudget.settings import Plan
 
-#: The memory curve of this machine, once it was needed.
-curve_key = pytest.StashKey["MemoryCurve | None"]()
+#: The memory curve of this machine by its key, once it was needed: it outlives a run within one process.
+_curves: dict[str, MemoryCurve] = {}
 CURVE_CACHE = "growthbudget/memory_curve"
+#: From the best verdict of a ray to the worst; the worst is the test's.
+WORSE = ("within", "undecided", "unmeasured", "exceeded")
 
 
 def hold(item: GrowthItem) -> None:
@@ -42,6 +47,7 @@ def hold(item: GrowthItem) -> None:
             except BodyFailed as error:
                 failure = error
                 break
+            item.ihook.pytest_growthbudget_judged(item=item, judgement=judgement)
             item.judgements.append(to_wire(judgement, undecided=plan.undecided))
     if failure is not None:
         item.failed_at = str(failure)
@@ -55,43 +61,71 @@ def hold(item: GrowthItem) -> None:
 
 
 def judge_plan(item: GrowthItem, plan: Plan, forget: Callable[[], None]) -> Judgement:
-    """Measure one budget of `item` and judge it. Raises `BodyFailed` where the test itself fails."""
+    """Measure one budget of `item` along each of its rays; the worst ray's judgement is the budget's.
+
+    Raises `BodyFailed` where the test itself fails.
+    """
+    began = clocks.wall_time_ns()
+    every = rays(plan.vary, item.config.stash[shared_key].ordinary_size)
+    judged: list[Judgement] = []
+    for ray in every:
+        judged.append(_judge_ray(item, plan, ray, plan.time_limit / len(every), forget))
+        if judged[-1].verdict == "exceeded":
+            break
+    worst = max(judged, key=lambda judgement: WORSE.index(judgement.verdict))
+    named = tuple((judgement.ray, judgement.verdict) for judgement in judged) if len(every) > 1 else ()
+    return replace(worst, rays=named, seconds=(clocks.wall_time_ns() - began) / 1e9)
+
+
+def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget: Callable[[], None]) -> Judgement:
     from pytest_growthbudget.fitting.rule import decide
 
-    (variable,) = plan.vary
-    fixture = plan.vary[variable]
-    began = clocks.wall_time_ns()
-    meter = meter_for(plan.meter)
-    watch = Watch(plan.time_limit)
-    repeater = Repeater(item, lambda size: {fixture: size}, watch)
-    growth = plan.budget.along({variable: 1.0}, {})
-    promise = Promise(
-        log_growth=growth,
-        exponential=plan.budget.exponential,
-        slack=plan.slack,
-        confidence=plan.confidence,
-        deterministic=meter.deterministic,
-        curve=lambda: memory_curve(item.config),
-    )
-    campaign = Campaign(
-        take=taker(repeater, meter, forget),
-        footprint=repeater.footprint,
-        now=clocks.wall_time_ns,
-        limits=Limits(
-            time=plan.time_limit * 1e9,
-            smallest=plan.smallest,
-            largest=plan.largest,
+    growth = plan.budget.ray(ray.moving)
+    watch = Watch(time_limit)
+    repeater = Repeater(item, ray.assign, watch)
+
+    def curve() -> MemoryCurve | None:
+        before = clocks.wall_time_ns()
+        measured = memory_curve(item.config)
+        spent = clocks.wall_time_ns() - before
+        campaign.extend(spent)
+        watch.extend(spent / 1e9)
+        return measured
+
+    finding: Finding
+    notes: tuple[str, ...] = ()
+    unit = ""
+    try:
+        meter = meter_of(plan.meter, item.config)
+        unit = meter.unit
+        promise = Promise(
+            log_growth=lambda n: growth.log_value({"n": n}),
             exponential=plan.budget.exponential,
-            repeatable=repeater.repeatable,
-            clock=not meter.deterministic,
-        ),
-        seed=f"{plan.seed}/{item.nodeid}/{plan.meter}",
-    )
-    with watch.start():
-        try:
+            slack=plan.slack,
+            confidence=plan.confidence,
+            deterministic=meter.deterministic,
+            curve=curve,
+        )
+        campaign = Campaign(
+            take=taker(repeater, meter, forget),
+            footprint=repeater.footprint,
+            now=clocks.wall_time_ns,
+            limits=Limits(
+                time=time_limit * 1e9,
+                smallest=plan.smallest,
+                largest=plan.largest,
+                exponential=plan.budget.exponential,
+                repeatable=repeater.repeatable,
+                clock=not meter.deterministic,
+            ),
+            seed=f"{plan.seed}/{item.nodeid}/{plan.meter}/{ray.name}",
+        )
+        with watch.start():
             finding = campaign.run(decide(promise))
-        except MeterError as error:
-            finding = Finding(verdict="unmeasured", reason=str(error))
+        notes = notes_of(meter)
+        close_meter(meter)
+    except MeterError as error:
+        finding = Finding(verdict="unmeasured", reason=str(error))
     return Judgement(
         **{name: getattr(finding, name) for name in Finding.__dataclass_fields__},
         bound=plan.budget.text,
@@ -99,12 +133,25 @@ def judge_plan(item: GrowthItem, plan: Plan, forget: Callable[[], None]) -> Judg
         theorem=plan.budget.theorem,
         steps=plan.budget.steps,
         meter=plan.meter,
-        unit=meter.unit,
+        unit=unit,
         slack=plan.slack,
         confidence=plan.confidence,
-        seconds=(clocks.wall_time_ns() - began) / 1e9,
         seed=plan.seed,
+        notes=notes,
+        allowed=allowed(finding, lambda n: growth.log_value({"n": n})),
+        ray=ray.name,
     )
+
+
+def allowed(finding: Finding, log_growth: Callable[[float], float]) -> tuple[float, ...]:
+    """What the budget allows at each size of `finding`, scaled to the costs at its three smallest sizes."""
+    import math
+
+    rows = [row for row in finding.sizes if row.cost > 0]
+    if not rows:
+        return ()
+    scale = statistics.median(math.log(row.cost) - log_growth(row.size) for row in rows[:3])
+    return tuple(math.exp(min(scale + log_growth(row.size), 700.0)) for row in finding.sizes)
 
 
 def taker(repeater: Repeater, meter: Meter, forget: Callable[[], None]) -> Callable[[int, int], Reading]:
@@ -113,24 +160,24 @@ def taker(repeater: Repeater, meter: Meter, forget: Callable[[], None]) -> Calla
     def take(size: int, calls: int) -> Reading:
         taken = repeater.take(size, meter, calls)
         forget()
-        return Reading(size=size, cost=taken.cost, calls=calls, wall=taken.wall, elapsed=taken.elapsed)
+        cost = checked_cost(meter, taken.cost)
+        return Reading(size=size, cost=cost, calls=calls, wall=taken.wall, elapsed=taken.elapsed)
 
     return take
 
 
 def memory_curve(config: pytest.Config) -> MemoryCurve | None:
-    """What memory adds to linear code on this machine: from this run, pytest's cache, or measured now."""
-    if curve_key in config.stash:
-        return config.stash[curve_key]
+    """What memory adds to linear code on this machine: from this process, pytest's cache, or measured now."""
     from pytest_growthbudget.measuring import kernels
 
-    cache = getattr(config, "cache", None)
     key = kernels.machine_key()
-    kept = cache.get(CURVE_CACHE, {}) if cache is not None else {}
-    curve = kernels.from_dict(kept[key]) if key in kept else None
-    if curve is None:
-        curve = kernels.measure_curve()
-        if cache is not None:
-            cache.set(CURVE_CACHE, {key: asdict(curve)})
-    config.stash[curve_key] = curve
-    return curve
+    if key not in _curves:
+        cache = getattr(config, "cache", None)
+        kept = cache.get(CURVE_CACHE, {}) if cache is not None else {}
+        curve = kernels.from_dict(kept[key]) if key in kept else None
+        if curve is None:
+            curve = kernels.measure_curve()
+            if cache is not None:
+                cache.set(CURVE_CACHE, {key: asdict(curve)})
+        _curves[key] = curve
+    return _curves[key]

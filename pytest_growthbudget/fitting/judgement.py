@@ -66,6 +66,8 @@ class Judgement(Finding):
     `bound`: the promise as written; `theta`: its growth; `steps`: the derivation. `slack`, `confidence`: what the
     decision used. `seconds`: wall time of the whole measurement. `notes`: what distorted the readings, one
     sentence each. `allowed`: for each row of `sizes`, what the budget allows there, scaled to the smallest sizes.
+    `ray`: which sizes grew, where the bound has several variables (the worst ray is the one reported); `rays`: the
+    verdict on each ray that was judged.
     """
 
     bound: str
@@ -80,3 +82,5 @@ class Judgement(Finding):
     seed: int = 0
     notes: tuple[str, ...] = ()
     allowed: tuple[float, ...] = ()
+    ray: str = ""
+    rays: tuple[tuple[str, VerdictName], ...] = ()

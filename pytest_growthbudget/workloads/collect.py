@@ -7,8 +7,10 @@ from typing import Any
 
 import pytest
 
+from pytest_growthbudget.meters.protocol import Meter, MeterError
 from pytest_growthbudget.settings import MARKER, Settings, SettingsError, marks_apply, plans_for
 from pytest_growthbudget.workloads import internals
+from pytest_growthbudget.workloads.fixtures import shared_key
 from pytest_growthbudget.workloads.repeat import GrowthItem
 
 
@@ -64,6 +66,11 @@ def reported(item: pytest.Function, settings: Settings) -> pytest.Item:
         plans = plans_for(item, nodeid, settings)
     except SettingsError as error:
         raise pytest.Collector.CollectError(str(error)) from None
+    for plan in plans:
+        try:
+            meter_of(plan.meter, item.config)
+        except MeterError as error:
+            raise pytest.Collector.CollectError(f"{plan.source}: {error}") from None
     reason = refusal(item.obj)
     if reason:
         raise pytest.Collector.CollectError(f"{nodeid}: {reason}")
@@ -72,6 +79,21 @@ def reported(item: pytest.Function, settings: Settings) -> pytest.Item:
     if unused:
         raise pytest.Collector.CollectError(_no_size(nodeid, unused[0], item))
     return GrowthItem.in_place_of(item, plans)
+
+
+#: The meters of other plugins, asked for once.
+own_meters_key = pytest.StashKey[list[Meter]]()
+
+
+def meter_of(name: str, config: pytest.Config) -> Meter:
+    """The meter `name`: the package's own, or one that a plugin offers. Raises `MeterError` for an unknown one."""
+    from pytest_growthbudget.meters.registry import meter_for
+
+    if own_meters_key not in config.stash:
+        offered = config.hook.pytest_growthbudget_meters(config=config)
+        config.stash[own_meters_key] = [meter for meters in offered for meter in meters]
+    tally = config.stash[shared_key].fresh_tally()
+    return meter_for(name, config.stash[own_meters_key], tally=tally)
 
 
 def refusal(function: Any) -> str:
