@@ -56,6 +56,11 @@ def _has_one_line_loop(code: CodeType) -> bool:
     return False
 
 
+@functools.lru_cache(maxsize=4096)
+def _stands_on_one_line(code: CodeType) -> bool:
+    return {line for _, _, line in code.co_lines() if line is not None} == {code.co_firstlineno}
+
+
 def _claim() -> tuple[int, int]:
     """Two free tool ids. Raises MeterError, naming the holders, where there are none."""
     claimed: list[int] = []
@@ -84,10 +89,12 @@ class _Watch:
         self._codes: dict[int, CodeType] = {}
         self._scout = self._counter = -1
 
-    def begin(self, on_line: Callback, on_entry: Callback | None, on_jump: Callback) -> None:
+    def begin(
+        self, events_of: Callable[[CodeType], int], on_line: Callback, on_entry: Callback, on_jump: Callback
+    ) -> None:
+        """`events_of(code)`: the events that matter in that code object."""
         self._scout, self._counter = _claim()
-        self._on_entry = on_entry
-        self._entries = 0 if on_entry is None else _EVENTS.PY_START | _EVENTS.PY_RESUME
+        self._events_of, self._on_entry = events_of, on_entry
         register = _monitoring.register_callback
         register(self._counter, _EVENTS.LINE, on_line)
         register(self._counter, _EVENTS.PY_START, on_entry)
@@ -118,20 +125,20 @@ class _Watch:
             _monitoring.free_tool_id(tool)
         self._codes.clear()
 
-    def _adopt(self, code: CodeType) -> bool:
-        """Turn on the counter's events for `code`; whether they were off."""
-        events = _EVENTS.LINE | self._entries | (_EVENTS.JUMP if _has_one_line_loop(code) else 0)
+    def _adopt(self, code: CodeType) -> int:
+        """Turn on the counter's events for `code`: these events, or 0 where they are on already."""
+        events = self._events_of(code)
         # Keyed by identity: code objects that compare equal are instrumented one by one. Nothing from here to
-        # set_local_events gives way to another thread: so an entry is counted by one of the two tools, never
-        # by both, and a thread that outlives the reading does not touch ids that were given back.
+        # set_local_events gives way to another thread: so an entry is counted by one of the two tools, never by
+        # both, and a thread that outlives the reading does not touch ids that were given back.
         if self._counter < 0 or id(code) in self._codes:
-            return False
+            return 0
         self._codes[id(code)] = code
         _monitoring.set_local_events(self._counter, code, events)
-        return True
+        return events
 
     def _meet(self, code: CodeType, offset: int) -> object:
-        if counted(code.co_filename) and self._adopt(code) and self._on_entry is not None:
+        if counted(code.co_filename) and self._adopt(code) & _EVENTS.PY_START:
             self._on_entry(code, offset)
         return _monitoring.DISABLE
 
@@ -165,13 +172,18 @@ class StepWatch:
     def begin(self) -> None:
         self._watch.end()
         self._tally = tally = _Tally(quick=self._last < _QUICK_LIMIT)
-        self._watch.begin(tally.pair, tally.pair, tally.triple)
+        self._watch.begin(self._events_of, tally.pair, tally.pair, tally.triple)
 
     def end(self) -> int:
         self._watch.end()
         assert self._tally is not None
         self._last, self._tally = self._tally.read(), None
         return self._last
+
+    @staticmethod
+    def _events_of(code: CodeType) -> int:
+        entries = _EVENTS.LINE | _EVENTS.PY_START | _EVENTS.PY_RESUME
+        return entries | _EVENTS.JUMP if _has_one_line_loop(code) else entries
 
 
 class LineWatch:
@@ -182,14 +194,23 @@ class LineWatch:
         self._counts: defaultdict[tuple[str, int], int] = defaultdict(int)
 
     def begin(self) -> None:
-        self._watch.begin(self._on_line, None, self._on_jump)
+        self._watch.begin(self._events_of, self._on_line, self._on_entry, self._on_jump)
 
     def end(self) -> dict[tuple[str, int], int]:
         self._watch.end()
         return dict(self._counts)
 
+    @staticmethod
+    def _events_of(code: CodeType) -> int:
+        # From 3.13 on, entering a function that stands on one line is no change of line, so LINE is silent there.
+        start = _EVENTS.PY_START if _stands_on_one_line(code) else _EVENTS.LINE
+        return start | _EVENTS.JUMP if _has_one_line_loop(code) else start
+
     def _on_line(self, code: CodeType, line: int) -> None:
         self._counts[code.co_filename, line] += 1
+
+    def _on_entry(self, code: CodeType, offset: int) -> None:
+        self._counts[code.co_filename, code.co_firstlineno] += 1
 
     def _on_jump(self, code: CodeType, offset: int, target: int) -> None:
         if target <= offset:

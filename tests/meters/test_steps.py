@@ -2,18 +2,25 @@
 
 from __future__ import annotations
 
+import ast
 import concurrent.futures.thread
 import contextlib
+import difflib
+import fractions
+import inspect
+import io
 import os
+import statistics
 import subprocess
 import sys
 import textwrap
 import threading
+import tokenize
 from itertools import pairwise
 
 import pytest
 
-from pytest_growthbudget.meters import frames
+from pytest_growthbudget.meters import frames, tracing
 from pytest_growthbudget.meters.protocol import MeterError
 from pytest_growthbudget.meters.steps import Steps, count_lines
 from pytest_growthbudget.meters.tallies import Tally
@@ -67,6 +74,30 @@ def hanoi(discs: int) -> None:
 def berths(n):
     for berth in range(n):  # noqa: UP028 - a line a turn is what is counted
         yield berth
+
+
+SOURCE = inspect.getsource(difflib)
+
+
+def differences():
+    lines = SOURCE.splitlines()
+    return list(difflib.unified_diff(lines[:200], lines[50:260]))
+
+
+def tokens():
+    return list(tokenize.generate_tokens(io.StringIO(SOURCE[:20000]).readline))
+
+
+def folded_text():
+    return textwrap.fill(SOURCE[:5000], 40)
+
+
+def spread():
+    return statistics.median(fractions.Fraction(i, 7) for i in range(60)), statistics.stdev(range(50))
+
+
+def syntax_tree():
+    return ast.unparse(ast.parse(inspect.getsource(tracing)))
 
 
 def test_a_loop_counts_two_lines_a_turn():
@@ -374,6 +405,19 @@ class TestMonitoring:
         for core in ("ctrace", "sysmon"):
             assert run_under_coverage(core) == "26.0 26.0 missing []"
 
+    @pytest.mark.parametrize("work", [differences, tokens, folded_text, spread, syntax_tree], ids=lambda f: f.__name__)
+    def test_line_by_line_counts_are_those_of_the_interpreters_own_tracer(self, work):
+        """Two ways to count, one oracle for the other: sys.settrace on the same interpreter, line by line."""
+        if sys.gettrace() is not None:
+            pytest.skip("this session has a tracer, so there is no other to compare with")
+        work()
+        traced = tracing.LineWatch()
+        traced.begin()
+        work()
+        expected = traced.end()
+        here = {(__file__, line) for line in range(*own_lines(self))}
+        assert {place: n for place, n in expected.items() if place not in here} == count_lines(work)
+
     def test_another_tool_goes_on_hearing_its_events(self):
         heard = []
         tool = next(t for t in (5, 2) if sys.monitoring.get_tool(t) is None)
@@ -393,6 +437,11 @@ class TestMonitoring:
                 sys.monitoring.register_callback(tool, events.PY_START, None)
         assert heard == ["unloaded", "unloaded"]
         assert count == 26
+
+
+def own_lines(test: object) -> tuple[int, int]:
+    """First line of the class of `test`, and the end of this file: the lines of a test that reads in its own frame."""
+    return inspect.getsourcelines(type(test))[1], 10**6
 
 
 @contextlib.contextmanager
