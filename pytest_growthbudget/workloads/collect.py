@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import textwrap
 from collections.abc import Iterable
 from typing import Any
 
@@ -12,6 +13,15 @@ from pytest_growthbudget.settings import MARKER, Settings, SettingsError, marks_
 from pytest_growthbudget.workloads import internals
 from pytest_growthbudget.workloads.fixtures import shared_key
 from pytest_growthbudget.workloads.repeat import GrowthItem
+
+
+def fault(text: str) -> pytest.Collector.CollectError:
+    """A collection error whose prose is wrapped at 80 columns; short lines (a caret, code) stay as they are."""
+    lines = [
+        line if len(line) <= 80 else textwrap.fill(line, 80, break_long_words=False, break_on_hyphens=False)
+        for line in text.splitlines()
+    ]
+    return pytest.Collector.CollectError("\n".join(lines))
 
 
 def give_sizes(metafunc: pytest.Metafunc, settings: Settings) -> None:
@@ -33,7 +43,7 @@ def give_sizes(metafunc: pytest.Metafunc, settings: Settings) -> None:
     except (ValueError, pytest.Collector.CollectError) as error:
         if "duplicate" not in str(error):
             raise
-        raise pytest.Collector.CollectError(
+        raise fault(
             f"{metafunc.definition.nodeid}: {' or '.join(names)} is parametrized already; a growth budget sets "
             "the sizes itself: take that parametrization away, or budget another size with vary=..."
         ) from None
@@ -65,19 +75,19 @@ def reported(item: pytest.Function, settings: Settings) -> pytest.Item:
     try:
         plans = plans_for(item, nodeid, settings)
     except SettingsError as error:
-        raise pytest.Collector.CollectError(str(error)) from None
+        raise fault(str(error)) from None
     for plan in plans:
         try:
             meter_of(plan.meter, item.config)
         except MeterError as error:
-            raise pytest.Collector.CollectError(f"{plan.source}: {error}") from None
+            raise fault(f"{plan.source}: {error}") from None
     reason = refusal(item.obj)
     if reason:
-        raise pytest.Collector.CollectError(f"{nodeid}: {reason}")
+        raise fault(f"{nodeid}: {reason}")
     names = dict.fromkeys(name for plan in plans for name in plan.size_names)
     unused = [name for name in names if name not in set(internals.names_of_fixtures(item))]
     if unused:
-        raise pytest.Collector.CollectError(_no_size(nodeid, unused[0], item))
+        raise fault(_no_size(nodeid, unused[0], item))
     return GrowthItem.in_place_of(item, plans)
 
 
@@ -117,7 +127,7 @@ def refuse_test_case(collector: pytest.Collector, settings: Settings) -> None:
         nodeid = f"{collector.nodeid}::{name}"
         marked = any(mark.name == MARKER for mark in getattr(method, "pytestmark", ()))
         if marked or marks_apply_above(collector) or any(p.matches(nodeid) for p in settings.budgets):
-            raise pytest.Collector.CollectError(
+            raise fault(
                 f"{nodeid}: a growth budget cannot stand on a method of a unittest.TestCase, which takes no "
                 "fixtures; write it as a plain test function or in a class without that base"
             )
