@@ -36,7 +36,7 @@ def decide_counts(promise: Promise) -> Generator[Request, Answer, Finding]:
             again = run.climbed(first)
         assert again is not None
         if is_exceeded(again.plain, again.plain, again.gamma, limits.exceeded, limits):
-            reason = reasons.exceeded(evidence, excess, limits, confirmed=True)
+            reason = reasons.exceeded(evidence, excess, limits, agreed=reasons.BY_SECOND_SET)
             return conclude("exceeded", reason, promise, limits, evidence, confirmed=True)
         return conclude("undecided", reasons.UNCONFIRMED, promise, limits, evidence, confirmed=False)
     if is_within(fit, gamma, limits):

@@ -41,12 +41,13 @@ def within(evidence: Evidence, limits: Limits, *, deflated: bool) -> str:
     return f"over {over(evidence)} the excess{memory} is below the limit of {limits.within:.2f}"
 
 
-def exceeded(evidence: Evidence, excess: Interval, limits: Limits, *, confirmed: bool) -> str:
-    agreed = "and a second set of readings agrees" if confirmed else "and the first calls at each size agree"
-    return (
-        f"over {over(evidence)} the excess is at least {excess.low:.2f}, "
-        f"above the slack of {limits.exceeded:.2f}, {agreed}"
-    )
+BY_SECOND_SET: Final = ", and a second set of readings agrees"
+BY_CLIMB: Final = ", and the first calls at each size agree"
+
+
+def exceeded(evidence: Evidence, excess: Interval, limits: Limits, *, agreed: str) -> str:
+    low, slack = excess.low, limits.exceeded
+    return f"over {over(evidence)} the excess is at least {low:.2f}, above the slack of {slack:.2f}{agreed}"
 
 
 def wide(evidence: Evidence, excess: Interval, limits: Limits) -> str:

@@ -227,9 +227,10 @@ class _Clock:
         cut, _ = window
         evidence, limits = cut(self.judged()), self.run.limits
         excess = shown_excess(evidence.plain, evidence.gamma, limits.confidence)
+        agreed = reasons.BY_SECOND_SET if confirmed else reasons.BY_CLIMB
         return self.conclude(
             "exceeded",
-            reasons.exceeded(evidence, excess, limits, confirmed=confirmed),
+            reasons.exceeded(evidence, excess, limits, agreed=agreed),
             evidence,
             confirmed=True if confirmed else None,
             memory=True,

@@ -7,14 +7,14 @@ more than the slack, and that it is less than a larger limit. Where neither can 
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from enum import Enum
 from typing import Final
 
 import numpy as np
 
 from pytest_growthbudget.fitting.evidence import Evidence
-from pytest_growthbudget.fitting.excess import FEWEST_SIZES, Excess
+from pytest_growthbudget.fitting.excess import FEWEST_SIZES, Excess, Observations
 from pytest_growthbudget.measuring.readings import MemoryCurve
 
 CLOCK_SLACK: Final = 0.15
@@ -27,8 +27,10 @@ CHEAP_SIZES: Final = 7
 RESIDENT: Final = 2.0**20
 SMALL_FOOTPRINT: Final = 256 * 1024.0
 SMALL_SIZES: Final = 7
-UTMOST_INFLATION: Final = float(np.log(12.0))
-OVERWHELMING: Final = 0.35
+UTMOST_INFLATION: Final = float(np.log(20.0))
+FEW_SIZES: Final = 9
+FEW_RISE: Final = float(np.log(3.0))
+OVERWHELMING: Final = 0.15
 OVERWHELMING_RISE: Final = float(np.log(4.0))
 
 
@@ -103,6 +105,17 @@ def count_limits(slack: float, confidence: float = 0.95) -> Limits:
     )
 
 
+def given_limits(slack: float, confidence: float = 0.95) -> Limits:
+    """The limits for costs that were read elsewhere: as for a clock, but tighter where the slack is."""
+    margin = min(slack, CLOCK_SLACK)
+    return replace(
+        clock_limits(slack, confidence),
+        exceeded_flat=slack if slack < CLOCK_SLACK else max(slack, 0.20),
+        within=slack + margin,
+        within_hidden=slack + 2 * margin,
+    )
+
+
 def is_flat(gamma: float) -> bool:
     """Whether the budget is so flat (O(1), O(log n)) that it is judged on the excess at the largest size."""
     return gamma < FLAT_GAMMA
@@ -153,7 +166,7 @@ def exceeds(evidence: Evidence, limit: float, limits: Limits, curve: Callable[[]
     if not is_exceeded(evidence.plain, evidence.plain, evidence.gamma, limit, limits):
         return Says.NO
     if 0 < evidence.footprint <= SMALL_FOOTPRINT:
-        return Says.YES
+        return Says.YES if rises_enough(evidence.seen) else Says.NO
     known = curve()
     if known is None or evidence.allowed is None:
         return exceeds_uncurved(evidence, limit, limits)
@@ -162,10 +175,26 @@ def exceeds(evidence: Evidence, limit: float, limits: Limits, curve: Callable[[]
         evidence = evidence.up_to(known.resident)
         if len(evidence) < CHEAP_SIZES:
             return Says.NO
-    deflated = evidence.deflated
+    deflated, allowed = evidence.deflated, evidence.allowed
     assert deflated is not None
+    assert allowed is not None
     shown = is_exceeded(evidence.plain, deflated, evidence.gamma, limit, limits)
-    return Says.YES if shown else Says.NO
+    return Says.YES if shown and rises_enough(evidence.seen.divided_by(allowed)) else Says.NO
+
+
+def rises_enough(deflated: Observations) -> bool:
+    """Whether the cost has run ahead far enough for so few sizes: threefold, where there are fewer than nine.
+
+    The interval from five sizes is honest about noise, but not about a single step (a resize, the edge of a cache)
+    that falls among them.
+    """
+    return len(deflated) >= FEW_SIZES or rise(deflated) > FEW_RISE
+
+
+def rise(seen: Observations) -> float:
+    """By how much, in logs, the cost has run ahead of the growth allowed from the first size to the last."""
+    ahead = np.log(seen.costs) - seen.log_growth
+    return float(ahead[-1] - ahead[0])
 
 
 def is_cheap(evidence: Evidence, curve: MemoryCurve) -> bool:
@@ -186,15 +215,18 @@ def exceeds_uncurved(evidence: Evidence, limit: float, limits: Limits) -> Says:
     """
     span = float(evidence.seen.regressor[-1] - evidence.seen.regressor[0])
     most = limit + 1.5 * UTMOST_INFLATION / span
-    if is_exceeded(evidence.plain, evidence.plain, evidence.gamma, most, limits):
+    if is_exceeded(evidence.plain, evidence.plain, evidence.gamma, most, limits) and rises_enough(evidence.seen):
         return Says.YES
     small = evidence.up_to(SMALL_FOOTPRINT) if evidence.footprints[0] > 0 else evidence.window(0, 0)
-    if len(small) >= SMALL_SIZES and is_exceeded(small.plain, small.plain, small.gamma, limit, limits):
+    if (
+        len(small) >= SMALL_SIZES
+        and is_exceeded(small.plain, small.plain, small.gamma, limit, limits)
+        and rises_enough(small.seen)
+    ):
         return Says.YES
     return Says.NOT_WITHOUT_CURVE
 
 
 def runs_far_ahead(evidence: Evidence) -> bool:
     """Whether the cost has run ahead of the budget at least fourfold over the sizes."""
-    ahead = np.log(evidence.seen.costs) - evidence.seen.log_growth
-    return bool(ahead[-1] - ahead[0] > OVERWHELMING_RISE)
+    return rise(evidence.seen) > OVERWHELMING_RISE
