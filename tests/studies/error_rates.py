@@ -5,9 +5,10 @@
         [--jobs N] [--minutes M] [--json FILE] [--markdown FILE]
 
 Run from the repository root. Every function is held to its true growth, to a looser budget and to each that is one
-class too tight; all are measured live. `--json FILE` takes one line a case; a run given the same file goes on where
-the last one stopped, and `--minutes 0` only prints what the file has. Each quiet figure is as quiet as the machine
-was: the number of runnable processes is noted beside it.
+class too tight; all are measured live. With `--meter steps`, functions whose lines tell their growth are held to
+their true growth, to a looser budget and to one that is too tight by a log factor. `--json FILE` takes one line a
+case; a run given the same file goes on where the last one stopped, and `--minutes 0` only prints what the file has.
+Each quiet figure is as quiet as the machine was: the number of runnable processes is noted beside it.
 """
 
 from __future__ import annotations
@@ -42,6 +43,7 @@ def arguments(given: Sequence[str] | None = None) -> argparse.Namespace:
     parser.add_argument("--repeats", type=int, default=1, metavar="K", help="times that each case is judged")
     parser.add_argument("--only", metavar="NAME", action="append", help="functions whose name holds NAME")
     parser.add_argument("--relation", choices=("true", "loose", "tight"), action="append", help="budgets to hold to")
+    parser.add_argument("--meter", choices=("cpu_time", "steps"), default="cpu_time", help="what is read")
     parser.add_argument("--jobs", type=int, default=1, metavar="N", help="processes that measure side by side")
     parser.add_argument("--minutes", type=float, default=float("inf"), metavar="M", help="stop after M minutes")
     parser.add_argument("--seed", type=int, default=1, help="seed of sizes, inputs and order")
@@ -58,7 +60,7 @@ def chosen(options: argparse.Namespace) -> list[Case]:
         if options.half in ("all", entry.half)
         and (not options.only or any(part in entry.name for part in options.only))
     ]
-    cases = cases_of(entries, options.repeats, options.seed)
+    cases = cases_of(entries, options.repeats, options.seed, options.meter)
     return [case for case in cases if not options.relation or case.relation in options.relation]
 
 

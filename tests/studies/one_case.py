@@ -29,11 +29,15 @@ from pytest_growthbudget.measuring.readings import (
     Series,
 )
 from pytest_growthbudget.meters import clocks
+from pytest_growthbudget.meters.protocol import Meter
+from pytest_growthbudget.meters.steps import Steps
+from pytest_growthbudget.settings import DEFAULT_SLACK
 from pytest_growthbudget.workloads.repeat import collector_off
 from tests.studies.corpus import CORPUS, Entry
 from tests.studies.surroundings import busy_with
 
 Relation = Literal["true", "loose", "tight"]
+MeterName = Literal["cpu_time", "steps"]
 BY_NAME = {entry.name: entry for entry in CORPUS}
 #: What the hand recipe tolerates above the budget's own exponent: common practice.
 RECIPE_THRESHOLD = 0.25
@@ -50,28 +54,32 @@ class Case:
     bound: str
     repeat: int
     seed: int
+    meter: MeterName = "cpu_time"
 
     @property
     def key(self) -> str:
-        return f"{self.name} | {self.relation} | {self.bound} | {self.seed} | {self.repeat}"
+        return f"{self.name} | {self.relation} | {self.bound} | {self.seed} | {self.repeat} | {self.meter}"
 
 
-def cases_of(entries: Iterable[Entry], repeats: int, seed: int) -> list[Case]:
+def cases_of(entries: Iterable[Entry], repeats: int, seed: int, meter: MeterName = "cpu_time") -> list[Case]:
     """Every pair of body and budget, `repeats` times over; each turn in an order of its own."""
     cases = []
     for repeat in range(repeats):
         turn = [
-            Case(name=entry.name, relation=relation, bound=bound, repeat=repeat, seed=seed)
+            Case(name=entry.name, relation=relation, bound=bound, repeat=repeat, seed=seed, meter=meter)
             for entry in entries
-            for relation, bound in budgets_of(entry)
+            for relation, bound in budgets_of(entry, meter)
         ]
         random.Random(f"{seed} {repeat}").shuffle(turn)
         cases += turn
     return cases
 
 
-def budgets_of(entry: Entry) -> list[tuple[Relation, str]]:
-    return [("true", entry.growth), ("loose", entry.loose), *(("tight", bound) for bound in entry.too_tight)]
+def budgets_of(entry: Entry, meter: MeterName) -> list[tuple[Relation, str]]:
+    """What a body is held to; by steps only those whose lines tell, and one log factor too tight."""
+    if meter == "cpu_time":
+        return [("true", entry.growth), ("loose", entry.loose), *(("tight", bound) for bound in entry.too_tight)]
+    return [("true", entry.growth), ("loose", entry.loose), ("tight", entry.log_tighter)] if entry.log_tighter else []
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -99,6 +107,7 @@ class Outcome:
     load: bool
     curve: bool
     ended: str
+    meter: MeterName = "cpu_time"
     excess: list[float] | None = None
     resolution: float | None = None
     recipe: float | None = None
@@ -127,8 +136,9 @@ def growth_of(bound: str) -> tuple[Callable[[float], float], bool]:
 class Bench:
     """Takes readings of one body, each on a fresh input, as a test with a function-scoped workload would."""
 
-    def __init__(self, entry: Entry, seed: str, watch: Watch) -> None:
+    def __init__(self, entry: Entry, meter: Meter, seed: str, watch: Watch) -> None:
         self._entry = entry
+        self._meter = meter
         self._seed = seed
         self._watch = watch
         self._count = 0
@@ -139,7 +149,7 @@ class Bench:
 
     def take(self, size: int, calls: int) -> Reading:
         began = clocks.wall_time_ns()
-        body, meter = self._entry.body, clocks.CpuTime()
+        body, meter = self._entry.body, self._meter
         with collector_off():
             arguments = self._build(size)
             self._watch.guard()
@@ -233,7 +243,8 @@ def judge_case(case: Case, *, load: bool = False, time_limit: float = 10.0) -> O
         return memory_curve()
 
     watch = Watch(time_limit)
-    bench = Bench(entry, case.key, watch)
+    meter = clocks.CpuTime() if case.meter == "cpu_time" else Steps()
+    bench = Bench(entry, meter, case.key, watch)
     campaign = Campaign(
         take=bench.take,
         footprint=bench.footprint,
@@ -244,11 +255,18 @@ def judge_case(case: Case, *, load: bool = False, time_limit: float = 10.0) -> O
             largest=entry.largest,
             exponential=exponential,
             repeatable=entry.reusable and "n" not in entry.too_tight and entry.loose in ("log n", "sqrt(n)", "n"),
+            clock=not meter.deterministic,
         ),
         seed=case.key,
     )
     ear = Ear(once_more=case.relation == "true")
-    promise = Promise(log_growth=log_growth, exponential=exponential, curve=curve)
+    promise = Promise(
+        log_growth=log_growth,
+        exponential=exponential,
+        slack=DEFAULT_SLACK[case.meter],
+        deterministic=meter.deterministic,
+        curve=curve,
+    )
     busy = busy_with()
     try:
         with watch.start():

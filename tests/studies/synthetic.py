@@ -58,7 +58,8 @@ def offset(n: Array, draw: np.random.Generator) -> Array:
 def slow_start(n: Array, draw: np.random.Generator) -> Array:
     """Terms in n^-1/2 and n^-1, of either sign, beside the leading one."""
     first, second = draw.uniform(-0.4, 3.0), draw.uniform(-0.3, 3.0)
-    return 1 + first * (n[0] / n) ** 0.5 + second * (n[0] / n)
+    factor: Array = 1 + first * (n[0] / n) ** 0.5 + second * (n[0] / n)
+    return factor
 
 
 def ramp(n: Array, draw: np.random.Generator) -> Array:

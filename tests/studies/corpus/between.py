@@ -33,7 +33,7 @@ def sums_of_root_long_slices(values: list[float], starts: list[int]) -> float:
     return total
 
 
-@shelf.add(ROOT_CUBED, the_size, expected=lambda n: n * math.isqrt(n), reusable=True)
+@shelf.add(ROOT_CUBED, the_size, expected=lambda n: n * math.isqrt(n), reusable=True, tags="counted")
 def nested_root_loop(n: int) -> int:
     count = 0
     for _ in range(n):
@@ -42,7 +42,7 @@ def nested_root_loop(n: int) -> int:
     return count
 
 
-@shelf.add(ROOT_CUBED, the_size, expected=lambda n: sum(n // d for d in range(1, n + 1)), reusable=True)
+@shelf.add(ROOT_CUBED, the_size, expected=lambda n: sum(n // d for d in range(1, n + 1)), reusable=True, tags="counted")
 def divisors_of_each_number(n: int) -> int:
     count = 0
     for number in range(1, n + 1):
@@ -69,7 +69,13 @@ def matrix_of_n_cells(n: int, rng: random.Random) -> Arguments:
     return draw.random((side, side)).tolist(), draw.random((side, side)).tolist()
 
 
-@shelf.add(ROOT_CUBED, matrix_of_n_cells, expected=lambda a, b: (np.array(a) @ np.array(b)).tolist(), reusable=True)
+@shelf.add(
+    ROOT_CUBED,
+    matrix_of_n_cells,
+    expected=lambda a, b: (np.array(a) @ np.array(b)).tolist(),
+    reusable=True,
+    tags="counted",
+)
 def product_of_n_cells(one: list[list[float]], other: list[list[float]]) -> list[list[float]]:
     columns = list(zip(*other, strict=True))
     return [[sum([a * b for a, b in zip(row, column, strict=True)]) for column in columns] for row in one]
@@ -95,7 +101,7 @@ def two_digit_lists(n: int, rng: random.Random) -> Arguments:
     THREE_HALVES,
     two_digit_lists,
     growth="T(n) = 3 T(n/2) + n",
-    tags="sawtooth recursion allocator",
+    tags="counted sawtooth recursion allocator",
     reusable=True,
     expected=lambda one, other: [int(value) for value in np.convolve(one, other)],
 )
@@ -146,7 +152,7 @@ def product_of_long_numbers(one: int, other: int) -> int:
     return one * other
 
 
-@shelf.add(THREE_HALVES, floats, growth="T(n) = 3 T(n/2) + n", tags="recursion", reusable=True)
+@shelf.add(THREE_HALVES, floats, growth="T(n) = 3 T(n/2) + n", tags="counted recursion", reusable=True)
 def visit_three_overlapping_halves(values: list[float]) -> float:
     def part(piece: list[float]) -> float:
         total = 0.0
@@ -169,7 +175,7 @@ def odd_cells_by_rows(n: int) -> int:
     THREE_HALVES,
     the_size,
     expected=odd_cells_by_rows,
-    tags="recursion steps",
+    tags="counted recursion steps",
     reusable=True,
     growth="T(n) = 3 T(n/2) + 1",
 )

@@ -22,6 +22,7 @@ SMALL = 3
     expected=lambda a, b: (np.array(a) @ np.array(b)).tolist(),
     reusable=True,
     smallest=SMALL,
+    tags="counted",
 )
 def product_by_three_loops(one: list[list[float]], other: list[list[float]]) -> list[list[float]]:
     n = len(one)
@@ -42,7 +43,7 @@ def shortest_by_powers(lengths: list[list[float]]) -> list[list[float]]:
     return [list(row) for row in reach.tolist()]
 
 
-@shelf.add(CUBIC, square_lists, expected=shortest_by_powers, smallest=SMALL)
+@shelf.add(CUBIC, square_lists, expected=shortest_by_powers, smallest=SMALL, tags="counted")
 def shortest_ways_between_all(lengths: list[list[float]]) -> list[list[float]]:
     for middle_row in range(len(lengths)):
         beyond = lengths[middle_row]
@@ -57,7 +58,7 @@ def shortest_ways_between_all(lengths: list[list[float]]) -> list[list[float]]:
 @shelf.add(
     CUBIC,
     lambda n, rng: (bulk(rng).integers(1, 100, n + 1).tolist(),),
-    tags="memo",
+    tags="counted memo",
     reusable=True,
     smallest=SMALL,
     growth="n^3",
@@ -98,6 +99,7 @@ def equations(n: int, rng: random.Random) -> Arguments:
     equations,
     expected=lambda rows, right: np.linalg.solve(np.array(rows), np.array(right)).tolist(),
     smallest=SMALL,
+    tags="counted",
 )
 def eliminate(rows: list[list[float]], right: list[float]) -> list[float]:
     n = len(rows)
@@ -140,7 +142,7 @@ def reachable_by_powers(pairs: list[list[bool]]) -> list[list[bool]]:
     return [list(row) for row in reach.tolist()]
 
 
-@shelf.add(CUBIC, relation, expected=reachable_by_powers, tags="early_exit bimodal", smallest=SMALL)
+@shelf.add(CUBIC, relation, expected=reachable_by_powers, tags="counted early_exit bimodal", smallest=SMALL)
 def close_relation(pairs: list[list[bool]]) -> list[list[bool]]:
     n = len(pairs)
     for middle in range(n):
@@ -229,7 +231,7 @@ def product_in_seven_parts(one: Any, other: Any) -> Any:
     SEVEN_HALVES,
     small_integers,
     growth="T(n) = 7 T(n/2) + n^2",
-    tags="recursion steps",
+    tags="counted recursion steps",
     reusable=True,
     smallest=4,
 )
@@ -259,6 +261,7 @@ def seven_halves_over_pairs(values: list[int]) -> int:
     ),
     reusable=True,
     smallest=SMALL,
+    tags="counted",
 )
 def right_triangles_by_trial(n: int) -> int:
     count = 0

@@ -21,7 +21,7 @@ shelf = Shelf()
     floats,
     growth="T(n) = 2 T(n/2) + n",
     expected=sorted,
-    tags="recursion allocator",
+    tags="counted recursion allocator",
     reusable=True,
 )
 def merge_sort(values: list[float]) -> list[float]:
@@ -41,7 +41,7 @@ def merge_sort(values: list[float]) -> list[float]:
     return merged + one[i:] + other[j:]
 
 
-@shelf.add(LOGLINEAR, floats, expected=sorted, tags="recursion random allocator", reusable=True)
+@shelf.add(LOGLINEAR, floats, expected=sorted, tags="counted recursion random allocator", reusable=True)
 def quick_sort_with_random_pivot(values: list[float]) -> list[float]:
     if len(values) < 2:
         return values
@@ -56,7 +56,7 @@ def quick_sort_with_random_pivot(values: list[float]) -> list[float]:
     LOGLINEAR,
     floats,
     growth="T(n) = T(0.99 n) + T(0.01 n) + n",
-    tags="uneven recursion",
+    tags="counted uneven recursion",
     reusable=True,
     largest=100_000,
 )
@@ -93,7 +93,7 @@ def nearest_by_brute_force(places: list[tuple[float, float]]) -> float:
     points,
     growth="T(n) = 2 T(n/2) + n",
     expected=nearest_by_brute_force,
-    tags="recursion allocator",
+    tags="counted recursion allocator",
     reusable=True,
     largest=100_000,
 )
@@ -129,7 +129,7 @@ def inversions_by_pairs(values: list[float]) -> int:
     floats,
     growth="T(n) = 2 T(n/2) + n",
     expected=inversions_by_pairs,
-    tags="recursion",
+    tags="counted recursion",
     reusable=True,
 )
 def count_inversions(values: list[float]) -> int:

@@ -14,24 +14,28 @@ Body = TypeVar("Body", bound=Callable[..., object])
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Kind:
-    """A class of growth: `too_tight` are budgets below it that a clock can tell, `loose` is one above."""
+    """A class of growth: `too_tight` are budgets below it that a clock can tell, `loose` is one above.
+
+    `log_tighter`: a budget too tight by one log factor, which only a count can tell.
+    """
 
     bound: str
     loose: str
     too_tight: tuple[str, ...] = ()
+    log_tighter: str = ""
 
 
 CONSTANT = Kind(bound="1", loose="log n")
-LOGARITHM = Kind(bound="log n", loose="sqrt(n)")
-ROOT = Kind(bound="sqrt(n)", loose="n", too_tight=("log n",))
-LINEAR = Kind(bound="n", loose="n log n", too_tight=("log n",))
-LOGLINEAR = Kind(bound="n log n", loose="n^1.5")
-ROOT_CUBED = Kind(bound="n^1.5", loose="n^2", too_tight=("n",))
-THREE_HALVES = Kind(bound="n^1.585", loose="n^2", too_tight=("n",))
-QUADRATIC = Kind(bound="n^2", loose="n^3", too_tight=("n log n", "n"))
+LOGARITHM = Kind(bound="log n", loose="sqrt(n)", log_tighter="1")
+ROOT = Kind(bound="sqrt(n)", loose="n", too_tight=("log n",), log_tighter="sqrt(n) / log n")
+LINEAR = Kind(bound="n", loose="n log n", too_tight=("log n",), log_tighter="n / log n")
+LOGLINEAR = Kind(bound="n log n", loose="n^1.5", log_tighter="n")
+ROOT_CUBED = Kind(bound="n^1.5", loose="n^2", too_tight=("n",), log_tighter="n^1.5 / log n")
+THREE_HALVES = Kind(bound="n^1.585", loose="n^2", too_tight=("n",), log_tighter="n^1.585 / log n")
+QUADRATIC = Kind(bound="n^2", loose="n^3", too_tight=("n log n", "n"), log_tighter="n^2 / log n")
 QUADRATIC_LOG = Kind(bound="n^2 log n", loose="n^3", too_tight=("n log n",))
-SEVEN_HALVES = Kind(bound="n^2.807", loose="n^3", too_tight=("n^2",))
-CUBIC = Kind(bound="n^3", loose="n^4", too_tight=("n^2",))
+SEVEN_HALVES = Kind(bound="n^2.807", loose="n^3", too_tight=("n^2",), log_tighter="n^2.807 / log n")
+CUBIC = Kind(bound="n^3", loose="n^4", too_tight=("n^2",), log_tighter="n^3 / log n")
 GOLDEN = Kind(bound="1.618^n", loose="2^n", too_tight=("n^3",))
 DOUBLING = Kind(bound="2^n", loose="3^n", too_tight=("1.5^n",))
 FACTORIAL = Kind(bound="n!", loose="n n!", too_tight=("2^n",))
@@ -44,7 +48,7 @@ class Entry:
     `build(n, rng)`: a fresh input, as the arguments of one call. `expected`: the right answer, found another
     way from the same arguments; None where it is not cheap. `dominates`: the fastest-growing term makes up most
     of the cost where a call takes some 30 ms (or at `largest`). `reusable`: a call leaves its arguments as they
-    were.
+    were. `log_tighter`: a budget too tight by one log factor, where the lines that the body runs show its growth.
     """
 
     name: str
@@ -52,6 +56,7 @@ class Entry:
     build: Build
     growth: str
     too_tight: tuple[str, ...]
+    log_tighter: str
     loose: str
     tags: frozenset[str]
     dominates: bool
@@ -88,7 +93,11 @@ class Shelf:
         smallest: int = 8,
         largest: int = 2_000_000,
     ) -> Callable[[Body], Body]:
-        """Decorates a body; `growth` says in other words (a recurrence) what `kind` says."""
+        """Decorates a body; `growth` says in other words (a recurrence) what `kind` says. The tag `counted` says that
+        the lines executed grow as the cost does.
+        """
+
+        marks = frozenset(tags.split())
 
         def shelve(body: Body) -> Body:
             self._entries.append(
@@ -98,8 +107,9 @@ class Shelf:
                     build=build,
                     growth=growth or kind.bound,
                     too_tight=kind.too_tight,
+                    log_tighter=kind.log_tighter if "counted" in marks else "",
                     loose=kind.loose,
-                    tags=frozenset(tags.split()),
+                    tags=marks,
                     dominates=dominates,
                     reusable=reusable,
                     smallest=smallest,

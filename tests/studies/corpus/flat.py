@@ -83,11 +83,7 @@ def members_of_range(n: int, queries: list[int]) -> int:
     return sum(query in every_third for query in queries)
 
 
-def heap_of_floats(n: int, rng: random.Random) -> Arguments:
-    return ascending(n, rng)
-
-
-@shelf.add(CONSTANT, heap_of_floats, expected=min, tags="tiny", reusable=True)
+@shelf.add(CONSTANT, ascending, expected=min, tags="tiny", reusable=True)
 def peek_at_least(heap: list[float]) -> float:
     return heap[0]
 
@@ -153,7 +149,7 @@ def bisect_300_queries(values: list[float], queries: list[float]) -> int:
     with_queries(ascending, 60),
     growth="T(n) = T(n/2) + 1",
     reusable=True,
-    tags="cache",
+    tags="counted cache",
     expected=lambda values, queries: np.searchsorted(values, queries).tolist(),
 )
 def halve_by_hand(values: list[float], queries: list[float]) -> list[int]:
@@ -170,14 +166,14 @@ def halve_by_hand(values: list[float], queries: list[float]) -> list[int]:
     return places
 
 
-@shelf.add(LOGARITHM, heap_of_floats, tags="cache", smallest=400)
+@shelf.add(LOGARITHM, ascending, tags="cache", smallest=400)
 def replace_least_300(heap: list[float]) -> float:
     for step in range(300):
         heapq.heapreplace(heap, 2.0 + step)
     return heap[0]
 
 
-@shelf.add(LOGARITHM, heap_of_floats, expected=min, tags="cache")
+@shelf.add(LOGARITHM, ascending, expected=min, tags="cache")
 def push_and_pop_150(heap: list[float]) -> float:
     for step in range(150):
         heapq.heappush(heap, -float(step))
@@ -189,7 +185,7 @@ def fenwick_tree(n: int, rng: random.Random) -> Arguments:
     return [0] * (n + 1), [rng.randrange(1, n + 1) for _ in range(40)]
 
 
-@shelf.add(LOGARITHM, fenwick_tree, expected=lambda tree, places: len(places), tags="cache")
+@shelf.add(LOGARITHM, fenwick_tree, expected=lambda tree, places: len(places), tags="counted cache")
 def add_in_fenwick_tree(tree: list[int], places: list[int]) -> int:
     for place in places:
         while place < len(tree):
@@ -208,6 +204,7 @@ def add_in_fenwick_tree(tree: list[int], places: list[int]) -> int:
     reusable=True,
     expected=lambda bases, n: [pow(base, n, MODULUS) for base in bases],
     largest=10**7,
+    tags="counted",
 )
 def powers_by_squaring(bases: list[int], n: int) -> list[int]:
     powers = []
@@ -232,7 +229,7 @@ def pairs_below(n: int, rng: random.Random) -> Arguments:
     expected=lambda pairs: [math.gcd(*pair) for pair in pairs],
     reusable=True,
     largest=10**7,
-    tags="random",
+    tags="counted random",
 )
 def euclid_80_pairs(pairs: list[tuple[int, int]]) -> list[int]:
     divisors = []
@@ -253,7 +250,9 @@ def balanced_tree(n: int, rng: random.Random) -> Arguments:
     return grow(0, n), [rng.randrange(n) for _ in range(100)]
 
 
-@shelf.add(LOGARITHM, balanced_tree, expected=lambda tree, keys: keys, reusable=True, tags="cache", largest=300_000)
+@shelf.add(
+    LOGARITHM, balanced_tree, expected=lambda tree, keys: keys, reusable=True, tags="counted cache", largest=300_000
+)
 def descend_tree_100_times(tree: Any, keys: list[int]) -> list[int]:
     found = []
     for key in keys:
@@ -289,7 +288,7 @@ def prime_near(n: int, rng: random.Random) -> Arguments:
     return (m,)
 
 
-@shelf.add(ROOT, prime_near, expected=lambda m: True, smallest=1000, largest=10**11, reusable=True)
+@shelf.add(ROOT, prime_near, expected=lambda m: True, smallest=1000, largest=10**11, reusable=True, tags="counted")
 def prime_by_trial_division(m: int) -> bool:
     divisor = 2
     while divisor * divisor <= m:
@@ -306,6 +305,7 @@ def prime_by_trial_division(m: int) -> bool:
     largest=10**11,
     reusable=True,
     expected=lambda n: sum(d for d in range(1, n + 1) if n % d == 0),
+    tags="counted",
 )
 def sum_of_divisors(n: int) -> int:
     total = 0
@@ -328,7 +328,7 @@ def blocks_and_ranges(n: int, rng: random.Random) -> Arguments:
     blocks_and_ranges,
     smallest=64,
     reusable=True,
-    tags="sawtooth",
+    tags="counted sawtooth",
     expected=lambda values, sums, width, ranges: [sum(values[a:b]) for a, b in ranges],
 )
 def range_sums_by_blocks(
@@ -356,6 +356,7 @@ def range_sums_by_blocks(
     smallest=64,
     reusable=True,
     expected=lambda values, queries: [bisect_left(values, query) for query in queries],
+    tags="counted",
 )
 def jump_search_10_queries(values: list[float], queries: list[float]) -> list[int]:
     width = math.isqrt(len(values))
@@ -378,6 +379,7 @@ def jump_search_10_queries(values: list[float], queries: list[float]) -> list[in
     largest=10**11,
     reusable=True,
     expected=lambda n: (math.isqrt(8 * n + 1) - 1) // 2,
+    tags="counted",
 )
 def row_of_triangle(n: int) -> int:
     row, left = 0, n

@@ -27,7 +27,7 @@ shelf = Shelf()
 PRIME = 2_147_483_647
 
 
-@shelf.add(LINEAR, floats, expected=math.fsum, reusable=True)
+@shelf.add(LINEAR, floats, expected=math.fsum, reusable=True, tags="counted")
 def add_up(values: list[float]) -> float:
     total = 0.0
     for value in values:
@@ -40,7 +40,7 @@ def best_slice_by_prefixes(values: list[int]) -> int:
     return int(max(0, np.max(prefixes - np.minimum.accumulate(prefixes))))
 
 
-@shelf.add(LINEAR, small_integers, expected=best_slice_by_prefixes, reusable=True)
+@shelf.add(LINEAR, small_integers, expected=best_slice_by_prefixes, reusable=True, tags="counted")
 def best_slice(values: list[int]) -> int:
     best = current = 0
     for value in values:
@@ -53,7 +53,13 @@ def tides(n: int, rng: random.Random) -> Arguments:
     return (bulk(rng).integers(0, 3, n).tolist(),)
 
 
-@shelf.add(LINEAR, tides, expected=lambda v: [(k, len(list(g))) for k, g in itertools.groupby(v)], reusable=True)
+@shelf.add(
+    LINEAR,
+    tides,
+    expected=lambda v: [(k, len(list(g))) for k, g in itertools.groupby(v)],
+    reusable=True,
+    tags="counted",
+)
 def run_lengths(values: list[int]) -> list[tuple[int, int]]:
     runs = []
     current, length = values[0], 0
@@ -72,7 +78,7 @@ def nested_brackets(n: int, rng: random.Random) -> Arguments:
     return ("".join(rng.choices("([{", k=half)),)
 
 
-@shelf.add(LINEAR, nested_brackets, expected=lambda opening: True)
+@shelf.add(LINEAR, nested_brackets, expected=lambda opening: True, tags="counted")
 def brackets_match(opening: str) -> bool:
     pairs = {"(": ")", "[": "]", "{": "}"}
     text = opening + "".join(pairs[mark] for mark in reversed(opening))
@@ -85,7 +91,7 @@ def brackets_match(opening: str) -> bool:
     return not stack
 
 
-@shelf.add(LINEAR, floats, expected=lambda values: values[::-1])
+@shelf.add(LINEAR, floats, expected=lambda values: values[::-1], tags="counted")
 def reverse_in_place(values: list[float]) -> list[float]:
     low, high = 0, len(values) - 1
     while low < high:
@@ -99,7 +105,7 @@ def two_ascending(n: int, rng: random.Random) -> Arguments:
     return ascending(n // 2, rng) + ascending(n - n // 2, rng)
 
 
-@shelf.add(LINEAR, two_ascending, expected=lambda one, other: sorted(one + other), reusable=True)
+@shelf.add(LINEAR, two_ascending, expected=lambda one, other: sorted(one + other), reusable=True, tags="counted")
 def merge_ascending(one: list[float], other: list[float]) -> list[float]:
     merged = []
     i = j = 0
@@ -117,7 +123,7 @@ def merge_ascending(one: list[float], other: list[float]) -> list[float]:
     LINEAR,
     floats,
     expected=lambda values: math.fsum(x * x for x in values if x > 0.25),
-    tags="generator",
+    tags="counted generator",
     reusable=True,
 )
 def generator_pipeline(values: list[float]) -> float:
@@ -133,7 +139,7 @@ def generator_pipeline(values: list[float]) -> float:
     return sum(squared(above(values)))
 
 
-@shelf.add(LINEAR, floats, growth="T(n) = 2 T(n/2) + 1", expected=math.fsum, tags="recursion", reusable=True)
+@shelf.add(LINEAR, floats, growth="T(n) = 2 T(n/2) + 1", expected=math.fsum, tags="counted recursion", reusable=True)
 def add_up_by_halves(values: list[float]) -> float:
     def part(low: int, high: int) -> float:
         if high - low == 1:
@@ -144,7 +150,7 @@ def add_up_by_halves(values: list[float]) -> float:
     return part(0, len(values))
 
 
-@shelf.add(LINEAR, floats, expected=lambda values: sorted(values)[len(values) // 2], tags="random recursion")
+@shelf.add(LINEAR, floats, expected=lambda values: sorted(values)[len(values) // 2], tags="counted random recursion")
 def select_with_random_pivot(values: list[float]) -> float:
     place = len(values) // 2
     while True:
@@ -161,7 +167,9 @@ def select_with_random_pivot(values: list[float]) -> float:
         values = above
 
 
-@shelf.add(LINEAR, lambda n, rng: (bulk(rng).integers(0, 64, n).tolist(),), expected=sorted, reusable=True)
+@shelf.add(
+    LINEAR, lambda n, rng: (bulk(rng).integers(0, 64, n).tolist(),), expected=sorted, reusable=True, tags="counted"
+)
 def count_and_spread(values: list[int]) -> list[int]:
     counts = [0] * 64
     for value in values:
@@ -172,7 +180,9 @@ def count_and_spread(values: list[int]) -> list[int]:
     return spread
 
 
-@shelf.add(LINEAR, letters, expected=lambda text: int.from_bytes(text.encode(), "big") % PRIME, reusable=True)
+@shelf.add(
+    LINEAR, letters, expected=lambda text: int.from_bytes(text.encode(), "big") % PRIME, reusable=True, tags="counted"
+)
 def rolling_hash(text: str) -> int:
     code = 0
     for letter in text:
@@ -190,6 +200,7 @@ def text_and_pattern(n: int, rng: random.Random) -> Arguments:
     text_and_pattern,
     reusable=True,
     expected=lambda text, pattern: sum(text.startswith(pattern, i) for i in range(len(text))),
+    tags="counted",
 )
 def matches_by_prefix_table(text: str, pattern: str) -> int:
     border = [0]
@@ -221,7 +232,7 @@ def build_text_in_list(words: list[str]) -> str:
     return "".join(parts)
 
 
-@shelf.add(LINEAR, number_words, expected=lambda words: ";".join(words) + ";", tags="strings", reusable=True)
+@shelf.add(LINEAR, number_words, expected=lambda words: ";".join(words) + ";", tags="counted strings", reusable=True)
 def build_text_by_adding(words: list[str]) -> str:
     text = ""
     for word in words:
@@ -240,7 +251,7 @@ def island_sizes(graph: list[list[tuple[int, float]]]) -> int:
     return len(seen)
 
 
-@shelf.add(LINEAR, sparse_graph(4), expected=island_sizes, tags="bimodal cache", reusable=True, largest=400_000)
+@shelf.add(LINEAR, sparse_graph(4), expected=island_sizes, tags="counted bimodal cache", reusable=True, largest=400_000)
 def reach_from_first_vertex(graph: list[list[tuple[int, float]]]) -> int:
     reached = [False] * len(graph)
     reached[0] = True
@@ -292,7 +303,7 @@ def count_nodes(tree: Any) -> int:
     LINEAR,
     binary_heap_shape,
     expected=lambda tree: (count_nodes(tree), True),
-    tags="recursion generator",
+    tags="counted recursion generator",
     reusable=True,
     growth="T(n) = 2 T(n/2) + 1",
     largest=400_000,
@@ -317,6 +328,7 @@ def walk_tree(tree: Any) -> tuple[int, bool]:
     reusable=True,
     expected=lambda values, width: [max(values[i : i + width]) for i in range(len(values) - width + 1)],
     smallest=32,
+    tags="counted",
 )
 def highest_in_window(values: list[float], width: int) -> list[float]:
     candidates: deque[int] = deque()

@@ -243,7 +243,7 @@ def median_by_sorting(values: list[float]) -> float:
     LOGLINEAR,
     the_size,
     expected=lambda n: sum(n // i for i in range(1, n + 1)),
-    tags="steps",
+    tags="counted steps",
     reusable=True,
     largest=300_000,
 )

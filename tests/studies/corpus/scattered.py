@@ -25,7 +25,7 @@ def shuffled_chain(n: int, rng: random.Random) -> Arguments:
     LINEAR,
     shuffled_chain,
     expected=lambda head, nodes: sum(range(len(nodes))),
-    tags="cache",
+    tags="counted cache",
     reusable=True,
     largest=400_000,
 )
@@ -57,7 +57,7 @@ def values_and_order(n: int, rng: random.Random) -> Arguments:
     LINEAR,
     values_and_order,
     expected=lambda values, order: sum(values),
-    tags="cache",
+    tags="counted cache",
     reusable=True,
     largest=400_000,
 )
@@ -78,7 +78,7 @@ def table_and_all_keys(n: int, rng: random.Random) -> Arguments:
     LINEAR,
     table_and_all_keys,
     expected=lambda table, keys: len(keys),
-    tags="cache hash",
+    tags="counted cache hash",
     reusable=True,
     largest=400_000,
 )
@@ -116,7 +116,7 @@ def next_places(n: int, rng: random.Random) -> Arguments:
     return (following,)
 
 
-@shelf.add(LINEAR, next_places, expected=len, tags="cache", reusable=True)
+@shelf.add(LINEAR, next_places, expected=len, tags="counted cache", reusable=True)
 def length_of_cycle(following: list[int]) -> int:
     place, length = following[0], 1
     while place:
@@ -174,7 +174,7 @@ def components_by_flood(n: int, pairs: list[tuple[int, int]]) -> int:
     return count
 
 
-@shelf.add(LINEAR, merged_sets, expected=components_by_flood, tags="cache", reusable=True, largest=400_000)
+@shelf.add(LINEAR, merged_sets, expected=components_by_flood, tags="counted cache", reusable=True, largest=400_000)
 def join_disjoint_sets(n: int, pairs: list[tuple[int, int]]) -> int:
     parent = list(range(n))
     count = n

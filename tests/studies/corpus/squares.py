@@ -37,7 +37,7 @@ def distinct_in_list(values: list[int]) -> list[int]:
     return kept
 
 
-@shelf.add(QUADRATIC, floats, expected=sorted, tags="random")
+@shelf.add(QUADRATIC, floats, expected=sorted, tags="counted random")
 def insertion_sort(values: list[float]) -> list[float]:
     for place in range(1, len(values)):
         value, at = values[place], place - 1
@@ -48,7 +48,7 @@ def insertion_sort(values: list[float]) -> list[float]:
     return values
 
 
-@shelf.add(QUADRATIC, floats, expected=sorted, tags="early_exit random")
+@shelf.add(QUADRATIC, floats, expected=sorted, tags="counted early_exit random")
 def bubble_sort(values: list[float]) -> list[float]:
     for end in range(len(values) - 1, 0, -1):
         swapped = False
@@ -78,7 +78,7 @@ def common_by_memo(one: list[int], other: list[int]) -> int:
     return int(longest[-1, -1])
 
 
-@shelf.add(QUADRATIC, two_symbol_lists, expected=common_by_memo, reusable=True)
+@shelf.add(QUADRATIC, two_symbol_lists, expected=common_by_memo, reusable=True, tags="counted")
 def longest_common_part(one: list[int], other: list[int]) -> int:
     above = [0] * (len(other) + 1)
     for mine in one:
@@ -89,7 +89,7 @@ def longest_common_part(one: list[int], other: list[int]) -> int:
     return above[-1]
 
 
-@shelf.add(QUADRATIC, two_symbol_lists, tags="allocator cache", reusable=True, largest=1000)
+@shelf.add(QUADRATIC, two_symbol_lists, tags="counted allocator cache", reusable=True, largest=1000)
 def edits_between(one: list[int], other: list[int]) -> int:
     table = [[0] * (len(other) + 1) for _ in range(len(one) + 1)]
     table[0] = list(range(len(other) + 1))
@@ -116,6 +116,7 @@ def count_each_in_list(values: list[int]) -> list[int]:
     points,
     expected=lambda places: min(math.dist(a, b) for a, b in itertools.combinations(places, 2)),
     reusable=True,
+    tags="counted",
 )
 def nearest_of_all_pairs(places: list[tuple[float, float]]) -> float:
     nearest = math.inf
@@ -125,7 +126,7 @@ def nearest_of_all_pairs(places: list[tuple[float, float]]) -> float:
     return math.sqrt(nearest)
 
 
-@shelf.add(QUADRATIC, two_float_lists, expected=lambda a, b: np.convolve(a, b).tolist(), reusable=True)
+@shelf.add(QUADRATIC, two_float_lists, expected=lambda a, b: np.convolve(a, b).tolist(), reusable=True, tags="counted")
 def multiply_polynomials(one: list[float], other: list[float]) -> list[float]:
     product = [0.0] * (len(one) + len(other) - 1)
     for i, a in enumerate(one):
@@ -148,7 +149,13 @@ def sort_after_each_append(values: list[float]) -> list[float]:
     return ordered
 
 
-@shelf.add(QUADRATIC, lambda n, rng: (bulk(rng).integers(1, n // 2 + 1, n).tolist(), n), expected=None, reusable=True)
+@shelf.add(
+    QUADRATIC,
+    lambda n, rng: (bulk(rng).integers(1, n // 2 + 1, n).tolist(), n),
+    expected=None,
+    reusable=True,
+    tags="counted",
+)
 def fill_the_hold(weights: list[int], room: int) -> int:
     best = [0] * (room + 1)
     for weight in weights:
@@ -162,7 +169,7 @@ def pattern_that_backtracks(text: str) -> Any:
     return re.search("a+b", text)
 
 
-@shelf.add(QUADRATIC, lambda n, rng: ("a" * n,), expected=len, reusable=True)
+@shelf.add(QUADRATIC, lambda n, rng: ("a" * n,), expected=len, reusable=True, tags="counted")
 def palindrome_in_one_letter(text: str) -> int:
     longest = 0
     for centre in range(2 * len(text) - 1):
@@ -190,7 +197,7 @@ def longest_match_by_difflib(one: list[int], other: list[int]) -> int:
     small_integers,
     growth="T(n) = T(n-1) + n",
     reusable=True,
-    tags="generator",
+    tags="counted generator",
     expected=lambda values: sum(a + b == 0 for a, b in itertools.combinations(values, 2)),
 )
 def opposite_pairs(values: list[int]) -> int:
@@ -202,7 +209,7 @@ def opposite_pairs(values: list[int]) -> int:
     floats,
     expected=sorted,
     growth="T(n) = T(n-1) + n",
-    tags="recursion presorted uneven",
+    tags="counted recursion presorted uneven",
     reusable=True,
 )
 def quick_sort_first_pivot_on_sorted(values: list[float]) -> list[float]:
@@ -229,6 +236,7 @@ def path_in_bad_order(n: int, rng: random.Random) -> Arguments:
     path_in_bad_order,
     expected=lambda n, edges: sum(weight for _, _, weight in edges),
     reusable=True,
+    tags="counted",
 )
 def relax_edges_in_bad_order(n: int, edges: list[tuple[int, int, float]]) -> float:
     reach = [math.inf] * n
@@ -243,7 +251,7 @@ def relax_edges_in_bad_order(n: int, edges: list[tuple[int, int, float]]) -> flo
     return reach[-1]
 
 
-@shelf.add(QUADRATIC, floats, tags="large_constant", reusable=True, expected=lambda values: len(values) ** 2)
+@shelf.add(QUADRATIC, floats, tags="counted large_constant", reusable=True, expected=lambda values: len(values) ** 2)
 def set_up_then_all_pairs(values: list[float]) -> int:
     table = {i: i * i for i in range(10_000)}
     count = 0

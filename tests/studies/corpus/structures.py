@@ -17,7 +17,9 @@ shelf = Shelf()
 PRIME = 2_147_483_647
 
 
-@shelf.add(LINEAR, the_size, expected=lambda n: (pow(2, n + 1, PRIME) - 1) % PRIME, tags="memo resize", reusable=True)
+@shelf.add(
+    LINEAR, the_size, expected=lambda n: (pow(2, n + 1, PRIME) - 1) % PRIME, tags="counted memo resize", reusable=True
+)
 def memo_table_of_sums(n: int) -> int:
     memo = {0: 1}
     total = 1
@@ -50,7 +52,7 @@ def make_rows_of_dicts(values: list[int]) -> int:
     return len(rows)
 
 
-@shelf.add(LINEAR, floats, expected=len, tags="resize", reusable=True)
+@shelf.add(LINEAR, floats, expected=len, tags="counted resize", reusable=True)
 def append_one_by_one(values: list[float]) -> int:
     copied = []
     for value in values:
@@ -58,7 +60,7 @@ def append_one_by_one(values: list[float]) -> int:
     return len(copied)
 
 
-@shelf.add(LINEAR, integers, expected=lambda values: len(set(values)), tags="resize cache hash", reusable=True)
+@shelf.add(LINEAR, integers, expected=lambda values: len(set(values)), tags="counted resize cache hash", reusable=True)
 def index_by_number(values: list[int]) -> int:
     index = {}
     for place, value in enumerate(values):
@@ -70,7 +72,7 @@ def index_by_number(values: list[int]) -> int:
     LINEAR,
     lambda n, rng: (bulk(rng).integers(0, max(1, n // 4), n).tolist(),),
     expected=len,
-    tags="resize cache hash allocator",
+    tags="counted resize cache hash allocator",
     reusable=True,
 )
 def group_in_dict_of_lists(values: list[int]) -> int:
@@ -90,7 +92,7 @@ def pair_with_sum_minus_one(values: list[int]) -> int | None:
     return None
 
 
-@shelf.add(LINEAR, floats, expected=lambda values: values, tags="deque", reusable=True)
+@shelf.add(LINEAR, floats, expected=lambda values: values, tags="counted deque", reusable=True)
 def queue_through_deque(values: list[float]) -> list[float]:
     waiting: deque[float] = deque()
     for value in values:

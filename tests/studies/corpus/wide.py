@@ -37,7 +37,7 @@ def preferences(n: int, rng: random.Random) -> Arguments:
     QUADRATIC,
     preferences,
     expected=lambda ships, berths: len(ships),
-    tags="random cache",
+    tags="counted random cache",
     reusable=True,
     largest=2000,
 )
@@ -62,7 +62,7 @@ def match_ships_to_berths(ships: list[list[int]], berths: list[list[int]]) -> in
     QUADRATIC,
     square_lists,
     expected=lambda rows: np.array(rows).T.tolist(),
-    tags="cache allocator",
+    tags="counted cache allocator",
     reusable=True,
     largest=1500,
 )
@@ -101,7 +101,7 @@ def nearest_by_all_differences(places: Any) -> float:
     QUADRATIC,
     the_size,
     expected=lambda n: math.comb(n, n // 2) % 1_000_003,
-    tags="memo hash",
+    tags="counted memo hash",
     reusable=True,
     largest=2500,
 )
