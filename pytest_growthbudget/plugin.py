@@ -49,6 +49,8 @@ def pytest_addoption(parser: pytest.Parser) -> None:
         metavar="SECONDS",
         help="Spend at most this long on the budgets of one test, each (10).",
     )
+    group.addoption("--growth-records", metavar="FILE", help="Add the judgements of this run to FILE, as JSON Lines.")
+    group.addoption("--growth-page", metavar="FILE", help="Draw the judgements of this run as an HTML page in FILE.")
 
 
 def pytest_configure(config: pytest.Config) -> None:
@@ -60,6 +62,11 @@ def pytest_configure(config: pytest.Config) -> None:
     config.stash[settings_key] = settings
     config.stash[shared_key] = Shared(settings.ordinary_size, settings.seed)
     config.pluginmanager.register(Ledger(), "growthbudget-ledger")
+    if config.getoption("--growth-records") or config.getoption("--growth-page") or settings.ratchet:
+        from pytest_growthbudget import keeping
+
+        if keeping.wanted(config, settings):
+            config.pluginmanager.register(keeping.Keeper(config, settings), "growthbudget-keeper")
 
 
 @pytest.hookimpl(trylast=True)

@@ -54,6 +54,14 @@ class PlacedBudget:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class Ratchet:
+    """No test may grow faster than its record in the file `accepted`, by more than `margin` (None: by the meter)."""
+
+    accepted: str
+    margin: float | None = None
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Settings:
     """What holds for the whole run. `time_limit` is in seconds a test; `slack` is by meter."""
 
@@ -65,6 +73,7 @@ class Settings:
     ordinary_size: int = 100
     slack: Mapping[str, float] = field(default_factory=dict)
     budgets: tuple[PlacedBudget, ...] = ()
+    ratchet: Ratchet | None = None
     from_command_line: frozenset[str] = frozenset()
 
     def slack_of(self, meter: str, *, deterministic: bool = False) -> float:
@@ -88,6 +97,7 @@ class Plan:
     time_limit: float = 10.0
     undecided: str = "warn"
     seed: int = 1
+    ratchet: Ratchet | None = None
 
     @property
     def size_names(self) -> tuple[str, ...]:
@@ -160,6 +170,8 @@ _CHECKS: dict[str, Callable[[Any], Any]] = {
     "vary": _vary,
     "smallest": _whole(1, "a whole number of at least 1"),
     "largest": _whole(2, "a whole number of at least 2"),
+    "accepted": _text,
+    "margin": _number(0, 10, "a positive exponent below 10"),
 }
 
 
@@ -196,7 +208,7 @@ def read_pyproject(path: Path) -> Settings:
     return _settings(table, path.name)
 
 
-_TABLE_KEYS = ("confidence", "time_limit", "undecided", "seed", "ordinary_size", "slack", "budgets")
+_TABLE_KEYS = ("confidence", "time_limit", "undecided", "seed", "ordinary_size", "slack", "budgets", "ratchet")
 
 
 def _settings(table: Any, file: str) -> Settings:
@@ -211,6 +223,8 @@ def _settings(table: Any, file: str) -> Settings:
             values[key] = _slack_table(value, f"{file}, [tool.growthbudget.slack]")
         elif key == "budgets":
             values[key] = _placed_budgets(value, file)
+        elif key == "ratchet":
+            values[key] = _ratchet(value, f"{file}, [tool.growthbudget.ratchet]")
         else:
             values[key] = _checked(key, value, place)
     return Settings(**values)
@@ -220,6 +234,15 @@ def _slack_table(table: Any, place: str) -> dict[str, float]:
     if not isinstance(table, Mapping):
         raise SettingsError(f"{place}: expected a table of meter to slack, such as cpu_time = 0.2")
     return {meter: _checked("slack", value, f"{place}, {meter}") for meter, value in table.items()}
+
+
+def _ratchet(table: Any, place: str) -> Ratchet:
+    if not isinstance(table, Mapping) or "accepted" not in table:
+        raise SettingsError(f'{place}: needs accepted = "file of accepted records", from the project\'s root')
+    for key in table:
+        if key not in ("accepted", "margin"):
+            raise SettingsError(f"{place}: unknown key {key!r}; {nearest(key, ('accepted', 'margin'))}")
+    return Ratchet(**{key: _checked(key, value, place) for key, value in table.items()})
 
 
 def _placed_budgets(entries: Any, file: str) -> tuple[PlacedBudget, ...]:
@@ -320,6 +343,7 @@ def plan_of(args: tuple[Any, ...], kwargs: Mapping[str, Any], settings: Settings
         time_limit=given.get("time_limit", settings.time_limit),
         undecided=given.get("undecided", settings.undecided),
         seed=settings.seed,
+        ratchet=settings.ratchet,
     )
 
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 import statistics
 from collections.abc import Callable
 from dataclasses import asdict, replace
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import pytest
 
@@ -44,11 +44,12 @@ def hold(item: GrowthItem) -> None:
         for plan in item.plans:
             try:
                 judgement = judge_plan(item, plan, forget)
+                wire = against_accepted(item, plan, to_wire(judgement, undecided=plan.undecided), forget)
             except BodyFailed as error:
                 failure = error
                 break
             item.ihook.pytest_growthbudget_judged(item=item, judgement=judgement)
-            item.judgements.append(to_wire(judgement, undecided=plan.undecided))
+            item.judgements.append(wire)
     if failure is not None:
         item.failed_at = str(failure)
         assert failure.__cause__ is not None
@@ -58,6 +59,20 @@ def hold(item: GrowthItem) -> None:
     broken = [judgement for judgement in item.judgements if fails(judgement)]
     if broken:
         pytest.fail("\n".join(first_line(judgement) for judgement in broken), pytrace=False)
+
+
+def against_accepted(
+    item: GrowthItem, plan: Plan, judgement: dict[str, Any], forget: Callable[[], None]
+) -> dict[str, Any]:
+    """The judgement in wire form with what the ratchet says of it, where it is switched on."""
+    if plan.ratchet is None:
+        return judgement
+    from pytest_growthbudget import ratchet
+
+    def again() -> dict[str, Any]:
+        return to_wire(judge_plan(item, replace(plan, seed=plan.seed + 1), forget))
+
+    return ratchet.held(item, plan.ratchet, judgement, again)
 
 
 def judge_plan(item: GrowthItem, plan: Plan, forget: Callable[[], None]) -> Judgement:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import textwrap
 from typing import Any
 
-from pytest_growthbudget.reporting import units
+from pytest_growthbudget.reporting import risen, units
 
 WIDTH = 80
 BAR = 24
@@ -13,7 +13,7 @@ BAR = 24
 
 def fails(judgement: dict[str, Any]) -> bool:
     """Whether the test fails for this judgement (wire form), by the verdict and the policy for undecided ones."""
-    if judgement["verdict"] == "exceeded":
+    if judgement["verdict"] == "exceeded" or risen.fails(judgement):
         return True
     return judgement["verdict"] in ("undecided", "unmeasured") and judgement["undecided"] == "fail"
 
@@ -26,6 +26,8 @@ def power(exponent: float) -> str:
 def first_line(judgement: dict[str, Any]) -> str:
     """The line that stands alone in a CI summary."""
     verdict, meter, theta = judgement["verdict"], judgement["meter"], judgement["theta"]
+    if verdict != "exceeded" and risen.fails(judgement):
+        return risen.first_line(judgement)
     if verdict == "exceeded":
         return f"growth budget exceeded: {meter} grows as {_observed(judgement)} where {theta} is allowed"
     if verdict == "within":
@@ -105,6 +107,8 @@ def _facts(judgement: dict[str, Any]) -> str:
         lines.append(_fact("since", f"n = {units.count(judgement['bends_at'])}"))
     if judgement["confirmed"]:
         lines.append(_fact("confirmed", "by a second, independent set of readings"))
+    if judgement.get("drift"):
+        lines.append(_fact("drift", risen.fact(judgement)))
     if judgement["reason"] and judgement["verdict"] in ("within", "exceeded"):
         lines.append(_fact("because", judgement["reason"]))
     return "\n".join(lines)
