@@ -19,6 +19,7 @@ for _pool in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"):
     os.environ.setdefault(_pool, "1")  # CPU time adds up over threads
 
 import argparse
+import gc
 import json
 import sys
 import time
@@ -75,6 +76,13 @@ def key_of(outcome: Outcome) -> tuple[str, bool]:
     return case.key, outcome.load
 
 
+def prepare() -> None:
+    """In a process of its own: what the session holds already is hidden from the collector, as the plugin does."""
+    memory_curve()
+    gc.collect()
+    gc.freeze()
+
+
 def judged(cases: Sequence[Case], options: argparse.Namespace) -> Iterator[Outcome]:
     """Outcomes as they come, until the cases or the minutes run out."""
     ends = time.monotonic() + 60 * options.minutes
@@ -88,7 +96,7 @@ def judged(cases: Sequence[Case], options: argparse.Namespace) -> Iterator[Outco
                 yield judge(case)
         return
     waiting = iter(cases)
-    with ProcessPoolExecutor(options.jobs, get_context("spawn"), initializer=memory_curve) as pool:
+    with ProcessPoolExecutor(options.jobs, get_context("spawn"), initializer=prepare) as pool:
         running: set[Future[Outcome]] = set()
         while True:
             while len(running) < options.jobs and time.monotonic() < ends:
