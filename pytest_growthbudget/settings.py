@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     import pytest
 
     from pytest_growthbudget.bounds.budget import Budget
+    from pytest_growthbudget.bounds.callables import CallableBudget
 
 MARKER = "growth_budget"
 POLICIES = ("warn", "fail", "pass")
@@ -84,9 +85,13 @@ class Settings:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Plan:
-    """One budget on one test, every setting resolved. `source` says where it was declared."""
+    """One budget on one test, every setting resolved. `source` says where it was declared.
 
-    budget: Budget
+    `budget` is None where a `yardstick` is the budget. `at` and `ceiling`: the upper forecast at that size may not
+    pass that cost, in the meter's unit.
+    """
+
+    budget: Budget | CallableBudget | None
     source: str
     meter: str = "cpu_time"
     vary: Mapping[str, str] = field(default_factory=dict)
@@ -97,6 +102,9 @@ class Plan:
     time_limit: float = 10.0
     undecided: str = "warn"
     seed: int = 1
+    yardstick: Callable[..., Any] | None = None
+    at: int | None = None
+    ceiling: float | None = None
     ratchet: Ratchet | None = None
 
     @property
@@ -159,6 +167,29 @@ def _vary(value: Any) -> dict[str, str]:
     return dict(value)
 
 
+def _function(value: Any) -> Any:
+    if not callable(value):
+        raise ValueError("a function that takes the test's arguments")
+    return value
+
+
+#: The units in which a ceiling may be given, in the units of the meters.
+_UNITS = {"ns": 1.0, "us": 1e3, "ms": 1e6, "s": 1e9, "min": 60e9, "h": 3600e9}
+_UNITS |= {"B": 1.0, "kB": 1e3, "MB": 1e6, "GB": 1e9, "KiB": 2.0**10, "MiB": 2.0**20, "GiB": 2.0**30}
+
+
+def _cost(value: Any) -> float:
+    """A ceiling: a number in the meter's own unit, or text such as `2 s` or `64 MiB`."""
+    what = 'a positive number, or text with a unit such as "2 s" or "64 MiB"'
+    if isinstance(value, str):
+        amount, _, unit = value.strip().partition(" ")
+        try:
+            value = float(amount) * _UNITS[unit.strip()]
+        except (ValueError, KeyError):
+            raise ValueError(what) from None
+    return _number(0, math.inf, what)(value)
+
+
 _CHECKS: dict[str, Callable[[Any], Any]] = {
     "confidence": _number(0.5, 1, "a number above 0.5 and below 1"),
     "time_limit": _number(0, math.inf, "a positive number of seconds"),
@@ -170,6 +201,9 @@ _CHECKS: dict[str, Callable[[Any], Any]] = {
     "vary": _vary,
     "smallest": _whole(1, "a whole number of at least 1"),
     "largest": _whole(2, "a whole number of at least 2"),
+    "at": _whole(2, "a whole number of at least 2"),
+    "yardstick": _function,
+    "cost": _cost,
     "accepted": _text,
     "margin": _number(0, 10, "a positive exponent below 10"),
 }
@@ -269,6 +303,7 @@ def _placed_budgets(entries: Any, file: str) -> tuple[PlacedBudget, ...]:
 def growth_budget(
     bound: Any = None,
     *,
+    yardstick: Callable[..., Any] | None = None,
     meter: str = "cpu_time",
     vary: Mapping[str, str] | None = None,
     smallest: int | None = None,
@@ -277,6 +312,8 @@ def growth_budget(
     confidence: float | None = None,
     time_limit: float | None = None,
     undecided: str | None = None,
+    at: int | None = None,
+    cost: str | float | None = None,
 ) -> None:
     """The signature of the marker; called by nobody."""
 
@@ -303,9 +340,6 @@ def plan_of(args: tuple[Any, ...], kwargs: Mapping[str, Any], settings: Settings
 
     Raises `SettingsError` whose message names the source.
     """
-    from pytest_growthbudget.bounds.budget import parse_budget
-    from pytest_growthbudget.bounds.language import BoundError
-
     unknown = [key for key in kwargs if key not in _SIGNATURE.parameters]
     if unknown:
         hint = nearest(unknown[0], _SIGNATURE.parameters)
@@ -314,18 +348,12 @@ def plan_of(args: tuple[Any, ...], kwargs: Mapping[str, Any], settings: Settings
         raise SettingsError(f"{source}: growth_budget takes one bound; got {len(args)}: stack one marker a budget")
     if args and "bound" in kwargs:
         raise SettingsError(f"{source}: growth_budget got its bound twice")
-    bound = args[0] if args else kwargs.get("bound")
-    if bound is None:
-        raise SettingsError(f'{source}: growth_budget needs a bound, such as "n log n"')
-    if not isinstance(bound, str):
-        raise SettingsError(f'{source}: the bound must be text, such as "n log n"; got {bound!r}')
-    try:
-        budget = parse_budget(bound)
-    except BoundError as error:
-        raise SettingsError(f"{source}:\n{error}") from None
+    budget = _budget(args[0] if args else kwargs.get("bound"), kwargs.get("yardstick"), source)
 
     given = {key: _checked(key, value, source) for key, value in kwargs.items() if key != "bound" and value is not None}
     meter = given.get("meter", "cpu_time")
+    if ("at" in given) != ("cost" in given):
+        raise SettingsError(f"{source}: `at` and `cost` go together: the size, and the ceiling of the cost there")
     smallest, largest = given.get("smallest"), given.get("largest")
     if smallest is not None and largest is not None and largest < 2 * smallest:
         raise SettingsError(
@@ -343,12 +371,37 @@ def plan_of(args: tuple[Any, ...], kwargs: Mapping[str, Any], settings: Settings
         time_limit=given.get("time_limit", settings.time_limit),
         undecided=given.get("undecided", settings.undecided),
         seed=settings.seed,
+        yardstick=given.get("yardstick"),
+        at=given.get("at"),
+        ceiling=given.get("cost"),
         ratchet=settings.ratchet,
     )
 
 
-def _variables(budget: Budget, vary: Mapping[str, str] | None, source: str) -> dict[str, str]:
-    variables = budget.variables or ("n",)
+def _budget(bound: Any, yardstick: Any, source: str) -> Budget | CallableBudget | None:
+    from pytest_growthbudget.bounds.budget import parse_budget
+    from pytest_growthbudget.bounds.callables import callable_budget
+    from pytest_growthbudget.bounds.language import BoundError
+
+    if yardstick is not None:
+        if bound is not None:
+            raise SettingsError(f"{source}: growth_budget takes a bound or a yardstick, not both")
+        return None
+    if bound is None:
+        raise SettingsError(f'{source}: growth_budget needs a bound, such as "n log n"')
+    try:
+        if isinstance(bound, str):
+            return parse_budget(bound)
+        if callable(bound):
+            return callable_budget(bound)
+    except BoundError as error:
+        raise SettingsError(f"{source}:\n{error}") from None
+    raise SettingsError(f'{source}: the bound must be text, such as "n log n", or a function of n; got {bound!r}')
+
+
+def _variables(budget: Budget | CallableBudget | None, vary: Mapping[str, str] | None, source: str) -> dict[str, str]:
+    bounds = budget.variables if budget is not None else tuple(vary or ())[:1]
+    variables = bounds or ("n",)
     if vary is None:
         if len(variables) > 1:
             names = ", ".join(f'"{name}": "..."' for name in variables)
@@ -357,7 +410,7 @@ def _variables(budget: Budget, vary: Mapping[str, str] | None, source: str) -> d
                 f"gives each: vary={{{names}}}"
             )
         return {variables[0]: "problem_size"}
-    missing = [name for name in budget.variables if name not in vary]
+    missing = [name for name in bounds if name not in vary]
     if missing:
         raise SettingsError(f"{source}: vary does not say what gives {missing[0]!r}")
     surplus = [name for name in vary if name not in variables]

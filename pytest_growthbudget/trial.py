@@ -2,17 +2,19 @@
 
 from __future__ import annotations
 
+import math
 import statistics
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import asdict, replace
 from typing import TYPE_CHECKING, Any
 
 import pytest
 
-from pytest_growthbudget.fitting.judgement import Finding, Judgement
+from pytest_growthbudget.fitting.judgement import Finding, ForecastRow, Judgement
 from pytest_growthbudget.measuring.campaign import Campaign, Limits
 from pytest_growthbudget.measuring.guards import Watch
 from pytest_growthbudget.measuring.readings import MemoryCurve, Promise, Reading
+from pytest_growthbudget.measuring.yardstick import YardstickGrowth
 from pytest_growthbudget.meters import clocks
 from pytest_growthbudget.meters.protocol import Meter, MeterError, checked_cost, close_meter, notes_of
 from pytest_growthbudget.reporting.wire import to_wire
@@ -95,9 +97,15 @@ def judge_plan(item: GrowthItem, plan: Plan, forget: Callable[[], None]) -> Judg
 def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget: Callable[[], None]) -> Judgement:
     from pytest_growthbudget.fitting.rule import decide
 
-    growth = plan.budget.ray(ray.moving)
+    reference = YardstickGrowth()
+    value: Callable[[Mapping[str, float]], float] = (
+        reference.log_value if plan.budget is None else plan.budget.ray(ray.moving).log_value
+    )
     watch = Watch(time_limit)
     repeater = Repeater(item, ray.assign, watch)
+
+    def log_growth(n: float) -> float:
+        return value({"n": n})
 
     def curve() -> MemoryCurve | None:
         before = clocks.wall_time_ns()
@@ -107,61 +115,68 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
         watch.extend(spent / 1e9)
         return measured
 
-    finding: Finding
+    meter = meter_of(plan.meter, item.config)
+    promise = Promise(
+        log_growth=log_growth,
+        exponential=plan.budget is not None and plan.budget.exponential,
+        slack=plan.slack,
+        confidence=plan.confidence,
+        deterministic=meter.deterministic,
+        curve=curve,
+    )
+    campaign = Campaign(
+        take=taker(repeater, meter, forget, plan.yardstick, reference),
+        footprint=repeater.footprint,
+        now=clocks.wall_time_ns,
+        limits=Limits(
+            time=time_limit * 1e9,
+            smallest=plan.smallest,
+            largest=plan.largest,
+            exponential=promise.exponential,
+            repeatable=repeater.repeatable and plan.yardstick is None,
+            clock=not meter.deterministic,
+        ),
+        seed=f"{plan.seed}/{item.nodeid}/{plan.meter}/{ray.name}",
+    )
     notes: tuple[str, ...] = ()
-    unit = ""
+    ceiling: ForecastRow | None = None
     try:
-        meter = meter_of(plan.meter, item.config)
-        unit = meter.unit
-        promise = Promise(
-            log_growth=lambda n: growth.log_value({"n": n}),
-            exponential=plan.budget.exponential,
-            slack=plan.slack,
-            confidence=plan.confidence,
-            deterministic=meter.deterministic,
-            curve=curve,
-        )
-        campaign = Campaign(
-            take=taker(repeater, meter, forget),
-            footprint=repeater.footprint,
-            now=clocks.wall_time_ns,
-            limits=Limits(
-                time=time_limit * 1e9,
-                smallest=plan.smallest,
-                largest=plan.largest,
-                exponential=plan.budget.exponential,
-                repeatable=repeater.repeatable,
-                clock=not meter.deterministic,
-            ),
-            seed=f"{plan.seed}/{item.nodeid}/{plan.meter}/{ray.name}",
-        )
         with watch.start():
             finding = campaign.run(decide(promise))
         notes = notes_of(meter)
-        close_meter(meter)
+        if plan.at is not None and plan.ceiling is not None:
+            finding, ceiling = under_ceiling(finding, promise, plan.at, plan.ceiling)
     except MeterError as error:
         finding = Finding(verdict="unmeasured", reason=str(error))
+    finally:
+        close_meter(meter)
+    budget = plan.budget
     return Judgement(
         **{name: getattr(finding, name) for name in Finding.__dataclass_fields__},
-        bound=plan.budget.text,
-        theta=plan.budget.theta,
-        theorem=plan.budget.theorem,
-        steps=plan.budget.steps,
+        bound=budget.text if budget is not None else f"yardstick {_name(plan.yardstick)}",
+        theta=budget.theta if budget is not None else f"{_name(plan.yardstick)}'s growth",
+        theorem=budget.theorem if budget is not None else "",
+        steps=budget.steps if budget is not None else (),
         meter=plan.meter,
-        unit=unit,
+        unit=meter.unit,
         slack=plan.slack,
         confidence=plan.confidence,
         seed=plan.seed,
         notes=notes,
-        allowed=allowed(finding, lambda n: growth.log_value({"n": n})),
+        allowed=allowed(finding, log_growth),
+        variable=ray.variable,
         ray=ray.name,
+        ceiling=ceiling,
+        yardstick=() if budget is not None else tuple(reference.cost(row.size) for row in finding.sizes),
     )
+
+
+def _name(reference: object) -> str:
+    return str(getattr(reference, "__name__", "the reference"))
 
 
 def allowed(finding: Finding, log_growth: Callable[[float], float]) -> tuple[float, ...]:
     """What the budget allows at each size of `finding`, scaled to the costs at its three smallest sizes."""
-    import math
-
     rows = [row for row in finding.sizes if row.cost > 0]
     if not rows:
         return ()
@@ -169,13 +184,61 @@ def allowed(finding: Finding, log_growth: Callable[[float], float]) -> tuple[flo
     return tuple(math.exp(min(scale + log_growth(row.size), 700.0)) for row in finding.sizes)
 
 
-def taker(repeater: Repeater, meter: Meter, forget: Callable[[], None]) -> Callable[[int, int], Reading]:
-    """What the campaign calls for one reading. Warnings that the body gave are forgotten after each."""
+def under_ceiling(finding: Finding, promise: Promise, at: int, ceiling: float) -> tuple[Finding, ForecastRow | None]:
+    """`finding`, unless the forecast at size `at` passes `ceiling`; and that forecast beside the ceiling.
+
+    Exceeded where the forecast itself passes the ceiling, undecided where only its interval reaches over it.
+    """
+    from pytest_growthbudget.fitting.excess import CLOCK_NOISE, FEWEST_SIZES, observe
+    from pytest_growthbudget.fitting.forecast import forecast_cost
+
+    rows = [row for row in finding.sizes if row.cost > 0]
+    if finding.verdict not in ("within", "undecided") or len(rows) < FEWEST_SIZES:
+        return finding, None
+    seen = observe(
+        [row.size for row in rows],
+        [row.cost for row in rows],
+        promise.log_growth,
+        exponential=promise.exponential,
+    )
+    cost = forecast_cost(
+        seen,
+        promise.log_growth,
+        at,
+        exponential=promise.exponential,
+        confidence=promise.confidence,
+        noise=CLOCK_NOISE,
+    )
+    row = ForecastRow(size=at, cost=cost, allowed=ceiling)
+    if cost.estimate > ceiling:
+        reason = "the growth is kept, but the cost foreseen at the size named passes its ceiling"
+        return replace(finding, verdict="exceeded", reason=reason), row
+    if cost.high > ceiling and finding.verdict == "within":
+        reason = "the growth is kept, but the interval of the cost foreseen reaches over its ceiling"
+        return replace(finding, verdict="undecided", reason=reason), row
+    return finding, row
+
+
+def taker(
+    repeater: Repeater,
+    meter: Meter,
+    forget: Callable[[], None],
+    reference: Callable[..., object] | None,
+    growth: YardstickGrowth,
+) -> Callable[[int, int], Reading]:
+    """What the campaign calls for one reading. Warnings that the body gave are forgotten after each.
+
+    With a yardstick each reading of the body is followed by one of the reference on the same workload, and scaled
+    by how that one stood to the reference's usual cost: what slows both down at the time cancels out.
+    """
 
     def take(size: int, calls: int) -> Reading:
         taken = repeater.take(size, meter, calls)
-        forget()
         cost = checked_cost(meter, taken.cost)
+        if reference is not None:
+            beside = checked_cost(meter, repeater.yardstick(size, meter, reference))
+            cost *= growth.add(size, beside) / max(beside, 1e-9)
+        forget()
         return Reading(size=size, cost=cost, calls=calls, wall=taken.wall, elapsed=taken.elapsed)
 
     return take

@@ -66,7 +66,8 @@ class Judgement(Finding):
     `bound`: the promise as written; `theta`: its growth; `steps`: the derivation. `slack`, `confidence`: what the
     decision used. `seconds`: wall time of the whole measurement. `notes`: what distorted the readings, one
     sentence each. `allowed`: for each row of `sizes`, what the budget allows there, scaled to the smallest sizes.
-    `ray`: which sizes grew, where the bound has several variables (the worst ray is the one reported); `rays`: the
+    `variable`: the name of the size that grew. `ceiling`: the forecast that was held to a ceiling, and the ceiling.
+    `yardstick`: for each row of `sizes`, what the reference function cost. `ray`: which sizes grew, where the bound has several variables (the worst ray is the one reported); `rays`: the
     verdict on each ray that was judged.
     """
 
@@ -82,5 +83,8 @@ class Judgement(Finding):
     seed: int = 0
     notes: tuple[str, ...] = ()
     allowed: tuple[float, ...] = ()
+    variable: str = "n"
+    ceiling: ForecastRow | None = None
+    yardstick: tuple[float, ...] = ()
     ray: str = ""
     rays: tuple[tuple[str, VerdictName], ...] = ()

@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import inspect
+import itertools
 import textwrap
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from typing import Any
 
 import pytest
@@ -12,7 +14,7 @@ from pytest_growthbudget.meters.protocol import Meter, MeterError
 from pytest_growthbudget.settings import MARKER, Settings, SettingsError, marks_apply, plans_for
 from pytest_growthbudget.workloads import internals
 from pytest_growthbudget.workloads.fixtures import shared_key
-from pytest_growthbudget.workloads.repeat import GrowthItem
+from pytest_growthbudget.workloads.repeat import GrowthItem, given_to_yardstick
 
 
 def fault(text: str) -> pytest.Collector.CollectError:
@@ -81,6 +83,8 @@ def reported(item: pytest.Function, settings: Settings) -> pytest.Item:
             meter_of(plan.meter, item.config)
         except MeterError as error:
             raise fault(f"{plan.source}: {error}") from None
+        if plan.yardstick is not None:
+            check_yardstick(plan.yardstick, item, plan.source)
     reason = refusal(item.obj)
     if reason:
         raise fault(f"{nodeid}: {reason}")
@@ -91,8 +95,23 @@ def reported(item: pytest.Function, settings: Settings) -> pytest.Item:
     return GrowthItem.in_place_of(item, plans)
 
 
+def check_yardstick(reference: Callable[..., object], item: pytest.Function, source: str) -> None:
+    """Raise a collection error where `reference` cannot be called with the arguments of the test."""
+    names = given_to_yardstick(item)
+    try:
+        inspect.signature(reference).bind(*names)
+    except ValueError:  # a built-in function that does not tell its signature
+        return
+    except TypeError as error:
+        name = getattr(reference, "__name__", repr(reference))
+        raise fault(
+            f"{source}: the yardstick {name} cannot be called with the arguments of the test "
+            f"({', '.join(names) or 'none'}): {error}"
+        ) from None
+
+
 #: The meters of other plugins, asked for once.
-own_meters_key = pytest.StashKey[list[Meter]]()
+own_meters_key = pytest.StashKey["list[Meter]"]()
 
 
 def meter_of(name: str, config: pytest.Config) -> Meter:
@@ -100,8 +119,8 @@ def meter_of(name: str, config: pytest.Config) -> Meter:
     from pytest_growthbudget.meters.registry import meter_for
 
     if own_meters_key not in config.stash:
-        offered = config.hook.pytest_growthbudget_meters(config=config)
-        config.stash[own_meters_key] = [meter for meters in offered for meter in meters]
+        offered: list[Iterable[Meter]] = config.hook.pytest_growthbudget_meters(config=config)
+        config.stash[own_meters_key] = list(itertools.chain.from_iterable(offered))
     tally = config.stash[shared_key].fresh_tally()
     return meter_for(name, config.stash[own_meters_key], tally=tally)
 

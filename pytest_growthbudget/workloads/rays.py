@@ -26,14 +26,19 @@ class Ray:
         }
 
     @property
+    def variable(self) -> str:
+        """The name of the scale: the one variable that moves, or `n` where several do."""
+        return self.moving[0] if len(self.moving) == 1 else "n"
+
+    @property
     def name(self) -> str:
-        """How reports call it: `V alone, E = 100`; "" where there is only one variable."""
-        if not self.held and len(self.moving) == 1:
+        """How reports call it: `V alone, E = 100`, `V = E = n`; "" where there is only one variable."""
+        if len(self.fixtures) == 1:
             return ""
         if not self.held:
-            return " and ".join(self.moving) + " together"
+            return " = ".join((*self.moving, "n"))
         held = ", ".join(f"{variable} = {size}" for variable, size in self.held.items())
-        return f"{' and '.join(self.moving)} alone, {held}"
+        return f"{self.variable} alone, {held}"
 
 
 def rays(vary: Mapping[str, str], held_size: int) -> tuple[Ray, ...]:

@@ -146,8 +146,10 @@ class Repeater:
         self._shared.reseed(self._item.nodeid, size, self._readings)
         try:
             try:
+                arguments = internals.set_up(self._template)
+                # Only the body may be cut short: a fixture that is leaves pytest's own bookkeeping undone.
                 self._watch.guard()
-                yield internals.set_up(self._template)
+                yield arguments
             finally:
                 self._watch.release()
                 internals.tear_down(self._template, self._item)
@@ -155,6 +157,25 @@ class Repeater:
             raise
         except (Exception, pytest.skip.Exception, pytest.fail.Exception) as error:
             raise BodyFailed(sizes) from error
+
+    def yardstick(self, size: int, meter: Meter, reference: Callable[..., object]) -> float:
+        """Build the workload that the last reading of the body had, anew, and read one call of `reference` on it.
+
+        Raises `MeterError` where the reference raises.
+        """
+        self._readings -= 1
+        with collector_off(), self._set_up(size) as arguments:
+            values = [arguments[name] for name in given_to_yardstick(self._template)]
+            meter.start()
+            try:
+                reference(*values)
+            except Exception as error:
+                name = getattr(reference, "__name__", "the yardstick")
+                raise MeterError(
+                    f"the yardstick {name} raised {type(error).__name__} at size {size}: {error}. "
+                    "It is called with the arguments of the test, in their order."
+                ) from error
+            return meter.stop()
 
     def take(self, size: int, meter: Meter, calls: int = 1) -> Taken:
         """Build the workload of `size`, then read `calls` calls of the body with `meter`.
@@ -214,6 +235,11 @@ class Repeater:
         finally:
             if not running:
                 tracemalloc.stop()
+
+
+def given_to_yardstick(template: pytest.Function) -> tuple[str, ...]:
+    """The arguments of the test that a yardstick is called with, in order: all but this package's own fixtures."""
+    return tuple(name for name in internals.direct_arguments(template) if name not in OUR_FIXTURES)
 
 
 def repeatable(template: pytest.Function, size_names: tuple[str, ...]) -> bool:
