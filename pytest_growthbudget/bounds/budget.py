@@ -9,6 +9,7 @@ from functools import lru_cache
 from typing import Any, Literal
 
 from pytest_growthbudget.bounds import growth as g
+from pytest_growthbudget.bounds.derivation import Derivation, Unsolved
 from pytest_growthbudget.bounds.enclosure import to_float
 from pytest_growthbudget.bounds.exact import Undecidable, exp_number
 from pytest_growthbudget.bounds.growth import Factor, Growth, Relation
@@ -16,7 +17,7 @@ from pytest_growthbudget.bounds.language import BoundError
 from pytest_growthbudget.bounds.printing import show_growth
 from pytest_growthbudget.bounds.recurrence import Recurrence
 from pytest_growthbudget.bounds.statement import read
-from pytest_growthbudget.bounds.theorems import Derivation, Unsolved, solve
+from pytest_growthbudget.bounds.theorems import solve
 
 
 @dataclass(frozen=True)
@@ -40,9 +41,7 @@ class Budget:
 
     def terms(self) -> list[dict[str, dict[str, float]]]:
         """One mapping a monomial: variable → base of the exponential, exponents of n, log n, log log n and n!."""
-        return [
-            {name: _plain(dict(m).get(name, g.CONSTANT)) for name in self._named(m)} for m in self.growth.monomials
-        ]
+        return [{name: _plain(dict(m).get(name, g.CONSTANT)) for name in self._named(m)} for m in self.growth.monomials]
 
     def _named(self, m: g.Monomial) -> list[str]:
         present = [name for name, _ in m]
@@ -65,7 +64,7 @@ class Budget:
         return compare(self, other)
 
     def along(self, scales: Mapping[str, float], held: Mapping[str, float]) -> Callable[[float], float]:
-        """log growth as a function of one scale n: variable v has size scales[v]·n if it is in `scales`, else held[v]."""
+        """log growth as a function of one scale n: variable v has size scales[v]·n, or held[v]."""
         return g.scaled(self.growth, scales, held)
 
     def ray_theta(self, moving: Sequence[str]) -> str:
@@ -112,7 +111,9 @@ def _parse(text: str) -> Budget:
         if isinstance(found, Recurrence):
             return from_recurrence(found, text)
         _check_range(found)
-        return Budget(text, "bound", found.variables(), show_growth(found), "", (), found)
+        theta = show_growth(found)
+        steps = () if theta == text.strip() else (f"the part that grows fastest, without constant factors: {theta}",)
+        return Budget(text, "bound", found.variables(), theta, "", steps, found)
     except Unsolved as reason:
         raise BoundError(str(reason), text, 0, len(text), reason.hint) from None
     except Undecidable as reason:
@@ -125,7 +126,7 @@ def from_recurrence(recurrence: Recurrence, text: str = "") -> Budget:
     """The budget of a recurrence that was built from numbers or text.
 
     Raises:
-        theorems.Unsolved: no theorem covers it.
+        derivation.Unsolved: no theorem covers it.
         exact.Undecidable: two numbers are too close for a proof.
     """
     derivation = solve(recurrence)
@@ -134,7 +135,15 @@ def from_recurrence(recurrence: Recurrence, text: str = "") -> Budget:
     variables = (recurrence.variable,)
     theta = show_growth(solved)
     return Budget(
-        text, "recurrence", variables, theta, derivation.theorem, derivation.steps, solved, recurrence, derivation
+        text,
+        "recurrence",
+        variables,
+        theta,
+        derivation.theorem,
+        derivation.steps,
+        solved,
+        recurrence,
+        derivation,
     )
 
 
@@ -149,7 +158,7 @@ def _check_range(growth: Growth) -> None:
 def compare(a: str | Budget, b: str | Budget) -> Relation:
     """a's growth against b's: "slower", "same" or "faster", by proof.
 
-    Sizes of the same name are the same size; a lone size on each side is taken for the same one.
+    Sizes of the same name are the same size; sizes of different names grow independently.
 
     Raises:
         BoundError: an input is at fault, or the growths are incomparable, or no proof of their order was found.
@@ -159,7 +168,9 @@ def compare(a: str | Budget, b: str | Budget) -> Relation:
     try:
         found = g.relation(left.growth, right.growth)
     except Undecidable as reason:
-        raise BoundError(str(reason), f"{left.text} / {right.text}", hint="no answer is given without a proof") from None
+        raise BoundError(
+            str(reason), f"{left.text} / {right.text}", hint="no answer is given without a proof"
+        ) from None
     if found is None:
         raise BoundError(
             "the two growths are incomparable: which is larger depends on how the sizes grow together",

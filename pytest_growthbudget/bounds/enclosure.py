@@ -172,7 +172,22 @@ def _sign_poly(poly: Poly) -> int:
             return 1
         if high < 0:
             return -1
+    if _cancels(poly):
+        return 0
     raise Undecidable("two numbers here agree to 150 digits, but their equality could not be proved")
+
+
+def _cancels(poly: Poly) -> bool:
+    """Whether this is c·m·(root - root') with two equations for one and the same root."""
+    if len(poly) != 2:
+        return False
+    (a, x), (b, y) = poly.items()
+    only_a = [p for p in a if p not in b]
+    only_b = [p for p in b if p not in a]
+    if x != -y or len(only_a) != 1 or len(only_b) != 1:
+        return False
+    (s, e), (t, f) = only_a[0], only_b[0]
+    return s.kind == t.kind == "root" and e == f and bool(s.payload.same_root(t.payload))
 
 
 @lru_cache(maxsize=8192)

@@ -73,7 +73,7 @@ class Real:
     def __repr__(self) -> str:
         return f"Real({self.num!r}, {self.den!r})"
 
-    def __add__(self, other: Number) -> Number:
+    def __add__(self, other: Number | int) -> Number:
         if isinstance(other, Real):
             if self.den == other.den:
                 return make(_poly_add(self.num, other.num), self.den)
@@ -81,35 +81,35 @@ class Real:
             return make(num, _poly_mul(self.den, other.den))
         if not other:
             return self
-        return make(_poly_add(self.num, _scale(self.den, other)), self.den)
+        return make(_poly_add(self.num, _scale(self.den, Fraction(other))), self.den)
 
     __radd__ = __add__
 
     def __neg__(self) -> Number:
         return Real(_scale(self.num, Fraction(-1)), self.den)
 
-    def __sub__(self, other: Number) -> Number:
+    def __sub__(self, other: Number | int) -> Number:
         return self + (-other)
 
-    def __rsub__(self, other: Number) -> Number:
+    def __rsub__(self, other: Number | int) -> Number:
         return (-self) + other
 
-    def __mul__(self, other: Number) -> Number:
+    def __mul__(self, other: Number | int) -> Number:
         if isinstance(other, Real):
             return make(_poly_mul(self.num, other.num), _poly_mul(self.den, other.den))
-        return make(_scale(self.num, other), self.den) if other else ZERO
+        return make(_scale(self.num, Fraction(other)), self.den) if other else ZERO
 
     __rmul__ = __mul__
 
-    def __truediv__(self, other: Number) -> Number:
+    def __truediv__(self, other: Number | int) -> Number:
         if isinstance(other, Real):
             return make(_poly_mul(self.num, other.den), _poly_mul(self.den, other.num))
-        return make(_scale(self.num, 1 / other), self.den)
+        return make(_scale(self.num, 1 / Fraction(other)), self.den)
 
-    def __rtruediv__(self, other: Number) -> Number:
+    def __rtruediv__(self, other: Number | int) -> Number:
         if isinstance(other, Real):
             return other / self
-        return make(_scale(self.den, other), self.num) if other else ZERO
+        return make(_scale(self.den, Fraction(other)), self.num) if other else ZERO
 
 
 def _scale(poly: Mapping[Mono, Fraction], by: Fraction) -> Poly:
@@ -196,7 +196,11 @@ def monomials(x: Real) -> Iterable[Mono]:
 
 def depends_on(x: Number, kinds: tuple[str, ...]) -> bool:
     """Whether `x` contains a constant of one of these kinds."""
-    return isinstance(x, Real) and any(sym.kind in kinds for mono in monomials(x) for sym, _ in mono)
+    return isinstance(x, Real) and any(
+        sym.kind in kinds or (sym.kind in ("lnof", "exp") and depends_on(sym.payload, kinds))
+        for mono in monomials(x)
+        for sym, _ in mono
+    )
 
 
 _SMALL_PRIMES = [p for p in range(2, 1000) if all(p % d for d in range(2, isqrt(p) + 1))]
@@ -264,11 +268,7 @@ def number_key(x: Number) -> str:
     """A text that two numbers share only when they are equal."""
     if isinstance(x, Real):
         return "/".join(
-            "+".join(
-                sorted(
-                    f"{c}" + "".join(f"*{s.kind}[{s.key}]^{e}" for s, e in mono) for mono, c in poly.items()
-                )
-            )
+            "+".join(sorted(f"{c}" + "".join(f"*{s.kind}[{s.key}]^{e}" for s, e in mono) for mono, c in poly.items()))
             for poly in (x.num, x.den)
         )
     return str(x)
@@ -335,7 +335,13 @@ def power_number(x: Number, exponent: Number) -> Number:
         out: Number = ONE
         for _ in range(abs(k)):
             out = out * x
-        return out if k >= 0 else 1 / out
+        return out if k >= 0 else ONE / out
+    if isinstance(x, Real) and len(x.num) == 1 and len(x.den) == 1 and not isinstance(exponent, Real):
+        ((mono, coefficient),) = x.num.items()
+        out = power_number(coefficient, exponent)
+        for sym, e in mono:
+            out = out * symbol(sym, e * exponent)
+        return out
     return exp_number(exponent * ln_number(x))
 
 

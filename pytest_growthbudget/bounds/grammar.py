@@ -16,7 +16,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from fractions import Fraction
-from typing import NoReturn, Union
+from itertools import pairwise
+from typing import NoReturn
 
 from pytest_growthbudget.bounds import names
 from pytest_growthbudget.bounds.language import BoundError, Token, number_value
@@ -112,7 +113,7 @@ class RootOf:
     recursive: bool = False
 
 
-Node = Union[Num, Name, Sum, Product, Power, Factorial, Apply, Call, RootOf]
+Node = Num | Name | Sum | Product | Power | Factorial | Apply | Call | RootOf
 _STARTS = ("number", "name", "(", "sqrt", "⌈", "⌊", "{", "|")
 
 
@@ -126,18 +127,18 @@ class Parser:
         self.at = 0
         self.depth = 0
         self.unknown = ""
-        self.plain = {
-            t.value
-            for t, after in zip(tokens, tokens[1:], strict=False)
-            if t.kind == "name" and after.kind != "("
-        }
+        self.sizes: set[str] = set()
+        self.plain = {t.value for t, after in pairwise(tokens) if t.kind == "name" and after.kind != "("}
 
     @property
     def token(self) -> Token:
         return self.tokens[self.at]
 
+    def fault(self, message: str, start: int, end: int | None = None, hint: str = "") -> BoundError:
+        return BoundError(message, self.text, start, end, hint)
+
     def fail(self, message: str, start: int, end: int | None = None, hint: str = "") -> NoReturn:
-        raise BoundError(message, self.text, start, end, hint)
+        raise self.fault(message, start, end, hint)
 
     def take(self) -> Token:
         token = self.tokens[self.at]
@@ -149,10 +150,16 @@ class Parser:
             return self.take()
         if opened is not None and self.token.kind == "end":
             self.fail(f"this {opened.value!r} is never closed", opened.start, opened.end)
-        self.fail(f"expected {kind!r} here{self._found()}", self.token.start, self.token.end)
+        raise self.fault(f"expected {kind!r} here{self._found()}", self.token.start, self.token.end)
 
     def _found(self) -> str:
         return "" if self.token.kind == "end" else f", found {self.token.value!r}"
+
+    def size(self, token: Token) -> str:
+        """The name of a size, checked once."""
+        if token.value not in self.sizes:
+            self.sizes.add(names.checked_size(self.text, token, self.plain))
+        return token.value
 
     def finish(self) -> None:
         """Checks that everything was read."""
@@ -383,7 +390,7 @@ class Parser:
             self.take()
             inner = self.expect("name")
             closed = self.expect("|")
-            return Name(names.checked_size(self.text, inner, self.tokens), token.start, closed.end)
+            return Name(self.size(inner), token.start, closed.end)
         if token.kind == "{":
             return self.root()
         if token.kind == "sqrt":
@@ -397,13 +404,17 @@ class Parser:
             self.fail("the expression ends too early: a number, a size or a bracket was expected", token.start)
         if token.kind == "power":
             self.fail("this superscript stands on nothing", token.start, token.end)
-        self.fail(f"{token.value!r} was not expected: a number, a size or a bracket was", token.start, token.end)
+        raise self.fault(f"{token.value!r} was not expected: a number, a size or a bracket was", token.start, token.end)
 
     def named(self) -> Node:
         token = self.take()
         if self._is_call(token):
             if self.token.kind != "(":
-                self.fail(f"{token.value} is the recurrence's function and needs an argument", token.start, token.end)
+                self.fail(
+                    f"{token.value} is the recurrence's function and needs an argument",
+                    token.start,
+                    token.end,
+                )
             node, closed = self.bracket(")")
             if node.recursive:
                 self.fail("a call inside the argument of a call is not solved", token.start, closed.end)
@@ -415,7 +426,7 @@ class Parser:
         function = names.function(token.value)
         if function and (function not in names.WRAPPERS or bracketed):
             return self.application(function, token)
-        return Name(names.checked_size(self.text, token, self.tokens), token.start, token.end)
+        return Name(self.size(token), token.start, token.end)
 
     def application(self, function: str, named: Token) -> Node:
         """The power, if any, and the argument of a known function."""
@@ -423,7 +434,7 @@ class Parser:
         if self.token.kind in ("^", "power") and names.is_log(function):
             token = self.take()
             raised = self._superscript(token) if token.kind == "power" else self.exponent()
-            if not isinstance(raised, (Num, Sum)):
+            if isinstance(raised, Name) or (isinstance(raised, Apply) and raised.bare):
                 self.fail("the power of a logarithm must be a number", raised.start, raised.end)
         if self.token.kind == "(":
             opened = self.take()

@@ -33,9 +33,9 @@ from pytest_growthbudget.bounds.grammar import (
     RootOf,
     Sum,
 )
-from pytest_growthbudget.bounds.growth import Growth, dominant
+from pytest_growthbudget.bounds.growth import Growth, Monomial, dominant
 from pytest_growthbudget.bounds.language import BoundError
-from pytest_growthbudget.bounds.roots import growth_rate, solve
+from pytest_growthbudget.bounds.roots import solve
 from pytest_growthbudget.bounds.value import Outside, Value
 
 _LN2 = 0.6931471805599453
@@ -47,8 +47,11 @@ class Meaning:
     def __init__(self, text: str) -> None:
         self.text = text
 
+    def fault(self, message: str, node: Node, hint: str = "") -> BoundError:
+        return BoundError(message, self.text, node.start, node.end, hint)
+
     def fail(self, message: str, node: Node, hint: str = "") -> NoReturn:
-        raise BoundError(message, self.text, node.start, node.end, hint)
+        raise self.fault(message, node, hint)
 
     def of(self, node: Node) -> Value:
         """The value of a tree without calls.
@@ -83,7 +86,7 @@ class Meaning:
         if isinstance(node, RootOf):
             root = self._root(node)
             return v.number(root) if node.unknown == "p" else v.exp(v.number(root))
-        self.fail("a recursive call may only be added and multiplied by factors without calls", node)
+        raise self.fault("a recursive call may only be added and multiplied by factors without calls", node)
 
     def _product(self, node: Product) -> Value:
         out = self.of(node.items[0][1])
@@ -112,7 +115,7 @@ class Meaning:
                 self.fail("the base of this logarithm decides", node.exponent, "write log2(…), ln(…) or log(…, 10)")
             if depends_on(fixed, ("some",)):
                 self.fail("this exponent is known only up to a constant factor", node.exponent)
-            if abs(to_float(fixed)) > 10**6:
+            if abs(to_float(fixed)) > 10**15:
                 self.fail("this exponent is too large", node.exponent)
             return v.power(base, fixed)
         constant = base.constant()
@@ -258,11 +261,13 @@ class Meaning:
             return toll, calls
         if isinstance(node, Apply) and node.function == "max":
             self.fail(
-                "a maximum of recursive calls is not solved", node, "write the call that costs most, or their sum"
+                "a maximum of recursive calls is not solved",
+                node,
+                "write the call that costs most, or their sum",
             )
         if isinstance(node, Apply) and node.function in ("O", "Theta"):
             self.fail("a recursive call inside O(…) or Θ(…) is not read", node, "wrap the toll alone")
-        self.fail("the recurrence is not linear in its calls", node)
+        raise self.fault("the recurrence is not linear in its calls", node)
 
     def growth(self, value: Value, node: Node) -> Growth:
         """The leading growth of a value."""
@@ -274,7 +279,7 @@ class Meaning:
             self.fail(message, node, hint)
 
 
-def _weight(coefficient: Number, m: v.Monomial) -> float:
+def _weight(coefficient: Number, m: Monomial) -> float:
     """The written constant against logarithms to base 2; 1.0 where it is unknown."""
     if depends_on(coefficient, ("some",)):
         return 1.0

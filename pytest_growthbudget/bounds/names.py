@@ -37,8 +37,42 @@ _REFUSED = {
 }
 _ALWAYS = ("nan", "inf", "infinity", "omega", "mod")
 _WORDS = frozenset(
-    "for if with where and or not in is when else then lambda import from while def class return yield del pass "
-    "try raise exec eval open print true false none async await global".split()
+    [
+        "for",
+        "if",
+        "with",
+        "where",
+        "and",
+        "or",
+        "not",
+        "in",
+        "is",
+        "when",
+        "else",
+        "then",
+        "lambda",
+        "import",
+        "from",
+        "while",
+        "def",
+        "class",
+        "return",
+        "yield",
+        "del",
+        "pass",
+        "try",
+        "raise",
+        "exec",
+        "eval",
+        "open",
+        "print",
+        "true",
+        "false",
+        "none",
+        "async",
+        "await",
+        "global",
+    ]
 )
 
 
@@ -70,8 +104,10 @@ def refuse_function(text: str, token: Token, bracketed: bool) -> None:
         raise BoundError(f"{name!r} is a word of prose or code, not a size", text, token.start, token.end)
 
 
-def checked_size(text: str, token: Token, tokens: list[Token]) -> str:
+def checked_size(text: str, token: Token, others: set[str]) -> str:
     """The name of a size, refused where it may be a product written without spaces.
+
+    `others`: all names of the text that do not stand before a bracket.
 
     Raises:
         BoundError: the name is glued together, too long, or differs from another one by case alone.
@@ -89,9 +125,6 @@ def checked_size(text: str, token: Token, tokens: list[Token]) -> str:
         raise BoundError(
             f"{name!r} can be one size or a product", *place, f"write {parts}, or give the size a longer name"
         )
-    others = {
-        t.value for t, after in zip(tokens, tokens[1:], strict=False) if t.kind == "name" and after.kind != "("
-    }
     match = _DIGIT_ENDED.match(name)
     if match:
         letter = match.group(1)

@@ -6,7 +6,7 @@ from fractions import Fraction
 from functools import lru_cache
 
 from pytest_growthbudget.bounds.enclosure import to_float
-from pytest_growthbudget.bounds.exact import Mono, Number, Poly, Real, Symbol, exp_number
+from pytest_growthbudget.bounds.exact import Mono, Number, Poly, Real, Symbol, common_measure, exp_number
 from pytest_growthbudget.bounds.growth import Factor, Growth, Monomial
 from pytest_growthbudget.bounds.roots import Equation
 
@@ -103,28 +103,49 @@ def _show_poly(poly: Poly) -> str:
 
 
 def _as_log(x: Real) -> str | None:
-    """`log2(7)`-like text where x is a quotient of two logarithms of rationals."""
-    if len(x.den) != 1:
+    """`log2(7)` or `log(3, 1.5)` where x is a quotient of two logarithms of rationals."""
+    clear: dict[Symbol, Fraction] = {}
+    for mono in (*x.num, *x.den):
+        for sym, exponent in mono:
+            clear[sym] = min(clear.get(sym, exponent), exponent)
+    top = _argument(x.num, clear)
+    bottom = _argument(x.den, clear)
+    if top is None or bottom is None or bottom[1] == 1 or top[1] == 1:
         return None
-    bases = {s for mono in x.num for s, e in mono if e == -1}
-    if len(bases) != 1 or next(iter(bases)).kind != "ln":
+    (r, a), (q, b) = top, bottom
+    ratio = r / q
+    if ratio < 0:
+        ratio, a = -ratio, 1 / a
+    if max(ratio.numerator, ratio.denominator) > 6:
         return None
-    base = bases.pop()
-    argument = Fraction(1)
-    for mono, coefficient in x.num.items():
-        if not mono:
-            prime = base.payload
-        else:
-            rest = [(s, e) for s, e in mono if s != base]
-            if len(rest) != 1 or rest[0][0].kind != "ln" or rest[0][1] != 1 or len(mono) != 2:
-                return None
-            prime = rest[0][0].payload
-        if coefficient.denominator != 1 or abs(coefficient) > 12:
+    a, b = a**ratio.numerator, b**ratio.denominator
+    if b < 1:
+        a, b = 1 / a, 1 / b
+    if max(a.numerator, a.denominator, b.numerator, b.denominator) > 10**12:
+        return None
+    if b.denominator == 1 and b < 10**6:
+        return f"log{b}({show_fraction(a)})"
+    return f"log({show_fraction(a)}, {show_fraction(b)})"
+
+
+def _argument(poly: Poly, clear: dict[Symbol, Fraction]) -> tuple[Fraction, Fraction] | None:
+    """(r, a) with poly = r·ln a, once every constant's least exponent is cleared."""
+    exponents: dict[int, Fraction] = {}
+    for mono, coefficient in poly.items():
+        left = dict(mono)
+        rest = [(s, left.get(s, Fraction(0)) - e) for s, e in clear.items() if e < 0]
+        rest += [(s, e) for s, e in mono if clear[s] >= 0]
+        rest = [(s, e) for s, e in rest if e]
+        if len(rest) != 1 or rest[0][0].kind != "ln" or rest[0][1] != 1:
             return None
-        argument *= Fraction(prime) ** coefficient.numerator
-    if max(argument.numerator, argument.denominator) > 10**12:
-        return None
-    return f"log{base.payload}({show_fraction(argument)})"
+        exponents[rest[0][0].payload] = coefficient
+    measure = common_measure(abs(e) for e in exponents.values())
+    argument = Fraction(1)
+    for base, e in exponents.items():
+        if abs(e / measure) > 40 or base > 10**12:
+            return None
+        argument *= Fraction(base) ** (e / measure).numerator
+    return measure, argument
 
 
 @lru_cache(maxsize=1024)
@@ -144,7 +165,9 @@ def show_number(x: Number) -> str:
 def _exponent(x: Number) -> str:
     text = show_number(x)
     simple = isinstance(x, Fraction) and "/" not in text
-    bare = isinstance(x, Real) and (_as_log(x) is not None or (text.startswith("{") and text.endswith("}") and text.count("{") == 1))
+    bare = isinstance(x, Real) and (
+        _as_log(x) is not None or (text.startswith("{") and text.endswith("}") and text.count("{") == 1)
+    )
     return text if simple or bare else f"({text})"
 
 

@@ -5,13 +5,19 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import dataclass
 from fractions import Fraction
-from typing import Union
 
 from pytest_growthbudget.bounds import value as v
 from pytest_growthbudget.bounds.enclosure import compare_numbers, sign
 from pytest_growthbudget.bounds.exact import ONE, ZERO, Number, depends_on
-from pytest_growthbudget.bounds.grammar import Call, Node
-from pytest_growthbudget.bounds.growth import CONSTANT, Factor, Monomial, compare_factors, compare_monomials, monomial
+from pytest_growthbudget.bounds.grammar import Call
+from pytest_growthbudget.bounds.growth import (
+    CONSTANT,
+    Factor,
+    Monomial,
+    compare_factors,
+    compare_monomials,
+    monomial,
+)
 from pytest_growthbudget.bounds.meaning import Meaning
 from pytest_growthbudget.bounds.value import Outside, Value
 
@@ -46,7 +52,7 @@ class Root:
     plain: bool = True
 
 
-Argument = Union[Ratio, Decrease, Shrink, Root]
+Argument = Ratio | Decrease | Shrink | Root
 
 
 @dataclass(frozen=True, slots=True)
@@ -107,7 +113,7 @@ def _check_shrinks(argument: Argument) -> None:
         raise ValueError(f"the argument {argument} does not shrink")
 
 
-def read_term(meaning: Meaning, coefficient: Value, call: Call, variable: str, whole: Node) -> Term:
+def read_term(meaning: Meaning, coefficient: Value, call: Call, variable: str) -> Term:
     """One term, its coefficient and argument classified.
 
     Raises:
@@ -147,7 +153,9 @@ def _read_argument(meaning: Meaning, call: Call, variable: str) -> Argument:
     shown = meaning.text[call.argument.start : call.argument.end]
     if value.constant() is not None:
         meaning.fail(
-            f"the argument {shown} does not depend on {variable}", call.argument, "put a constant cost into the toll"
+            f"the argument {shown} does not depend on {variable}",
+            call.argument,
+            "put a constant cost into the toll",
         )
     try:
         m, c = v.single(value)

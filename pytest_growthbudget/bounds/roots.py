@@ -19,6 +19,7 @@ from pytest_growthbudget.bounds.enclosure import (
     compare_numbers,
     enclose,
     floor_number,
+    sign,
     to_float,
 )
 from pytest_growthbudget.bounds.exact import (
@@ -46,6 +47,22 @@ class Equation:
     @property
     def key(self) -> str:
         return ";".join(f"{a}@{number_key(w)}" for a, w in self.terms)
+
+    def same_root(self, other: Equation) -> bool:
+        """Whether two characteristic equations of small degree share their root.
+
+        They do where the greatest common divisor of their polynomials changes sign across it.
+        """
+        mine, theirs = _polynomial(self), _polynomial(other)
+        if mine is None or theirs is None:
+            return False
+        common = _common_divisor(mine, theirs)
+        if len(common) < 2:
+            return False
+        low, high = self.enclose(60)
+        on = arithmetic(80)
+        ends = [Fraction(on.exp((x, x))[i]) for i, x in enumerate((low, high))]
+        return _at(common, ends[0]) * _at(common, ends[1]) <= 0
 
     def approximate(self) -> float:
         """The root to about 15 digits (Newton steps on the logarithm of the left side, kept inside a bracket)."""
@@ -83,6 +100,41 @@ class Equation:
         return total
 
 
+def _polynomial(equation: Equation) -> list[Fraction] | None:
+    """Coefficients of x^K - Σ a x^(K-k), constant first; None unless all k are integers up to 40."""
+    weights = [w for _, w in equation.terms]
+    if not all(isinstance(w, Fraction) and w.denominator == 1 and w <= 40 for w in weights):
+        return None
+    degree = int(max(w for w in weights if isinstance(w, Fraction)))
+    out = [ZERO] * (degree + 1)
+    out[degree] = ONE
+    for a, w in equation.terms:
+        out[degree - int(w)] -= a  # type: ignore[arg-type]
+    return out
+
+
+def _common_divisor(a: list[Fraction], b: list[Fraction]) -> list[Fraction]:
+    while b:
+        rest = list(a)
+        while len(rest) >= len(b):
+            factor = rest[-1] / b[-1]
+            shift = len(rest) - len(b)
+            for i, c in enumerate(b):
+                rest[shift + i] -= factor * c
+            rest.pop()
+        while rest and not rest[-1]:
+            rest.pop()
+        a, b = b, [c / rest[-1] for c in rest]
+    return a
+
+
+def _at(polynomial: list[Fraction], x: Fraction) -> Fraction:
+    total = ZERO
+    for c in reversed(polynomial):
+        total = total * x + c
+    return total
+
+
 def _log_sum(logs: list[float], weights: list[float], x: float) -> tuple[float, float]:
     exponents = [la - w * x for la, w in zip(logs, weights, strict=True)]
     top = max(exponents)
@@ -98,7 +150,12 @@ def _enclose_root(equation: Equation, digits: int) -> Interval:
     parts = []
     for a, w in equation.terms:
         low, high = enclose(w, digits + 15)
-        parts.append((work.divide(Decimal(a.numerator), Decimal(a.denominator)), work.divide(work.add(low, high), Decimal(2))))
+        parts.append(
+            (
+                work.divide(Decimal(a.numerator), Decimal(a.denominator)),
+                work.divide(work.add(low, high), Decimal(2)),
+            )
+        )
     for _ in range(max(1, (digits + 15).bit_length() - 3)):
         value, slope = Decimal(-1), Decimal(0)
         for a_dec, w_dec in parts:
@@ -137,11 +194,11 @@ def sums_to_one(eq: Equation, x: Number) -> bool:
     1940), so with positive coefficients every part has to be rational by itself.
     """
     total: Number = ZERO
-    for a, w in eq.terms:
-        try:
+    try:
+        for a, w in eq.terms:
             total = total + a * exp_number(-(w * x))
-        except Undecidable:
-            return False
+    except Undecidable:
+        return False
     return total == ONE
 
 
@@ -155,6 +212,8 @@ def order(eq: Equation, x: Number) -> int:
             return -1
         if low > 1:
             return 1
+    if isinstance(x, Real) and sign(symbol(Symbol("root", eq, eq.key)) - x) == 0:
+        return 0
     raise Undecidable("a critical exponent agrees with the toll's to 150 digits, but no proof of equality was found")
 
 
@@ -182,7 +241,7 @@ def solve(terms: list[tuple[Fraction, Number]]) -> Number:
 @lru_cache(maxsize=2048)
 def growth_rate(terms: tuple[tuple[Fraction, int], ...]) -> Number:
     """ln ρ for Σ a ρ^(-k) = 1 with integers k > 0 that have no common divisor."""
-    eq = Equation(tuple(sorted(((a, Fraction(k)) for a, k in terms), key=lambda t: t[1])))
+    eq = Equation(tuple((a, Fraction(k)) for a, k in sorted(terms, key=lambda t: t[1])))
     if len(eq.terms) == 1:
         return ln_fraction(eq.terms[0][0]) / eq.terms[0][1]
     degree = max(k for _, k in terms)

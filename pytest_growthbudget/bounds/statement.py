@@ -10,20 +10,21 @@ from pytest_growthbudget.bounds import names
 from pytest_growthbudget.bounds import value as v
 from pytest_growthbudget.bounds.enclosure import sign
 from pytest_growthbudget.bounds.exact import common_measure, depends_on
-from pytest_growthbudget.bounds.grammar import Node, Parser
+from pytest_growthbudget.bounds.grammar import Call, Node, Parser
 from pytest_growthbudget.bounds.growth import CONSTANT, Factor, Growth
 from pytest_growthbudget.bounds.language import BoundError, Token, number_value, tokenize
 from pytest_growthbudget.bounds.meaning import Meaning
-from pytest_growthbudget.bounds.recurrence import Decrease, Recurrence, Term, read_term
-from pytest_growthbudget.bounds.value import Outside
+from pytest_growthbudget.bounds.recurrence import Argument, Decrease, Recurrence, Term, read_term
+from pytest_growthbudget.bounds.value import Outside, Value
 
 _OPEN = {"(": 1, "{": 1, "⌈": 1, "⌊": 1, ")": -1, "}": -1, "⌉": -1, "⌋": -1}
+MAX_CALLS = 16
 _SEPARATORS = ("with", "where", "and", "for", "if", "when")
 _ORDERS = ("=", "<=", ">=", "<", ">")
 
 
 @dataclass(frozen=True, slots=True)
-class _Call:
+class _LeftSide:
     """The left side `function(argument)`; `argument` is a name or a number."""
 
     function: Token
@@ -77,24 +78,26 @@ def _clauses(tokens: list[Token]) -> list[list[Token]]:
                 pieces[-1].append(token)
             continue
         pieces[-1].append(token)
-    out = []
-    for piece in pieces:
-        if piece:
-            out.append([*piece, Token("end", "", piece[-1].end, piece[-1].end + 1)])
-    return out
+    return [[*p, Token("end", "", p[-1].end, p[-1].end + 1)] for p in pieces if p]
 
 
-def _left(text: str, piece: list[Token]) -> _Call | None:
+def _left(text: str, piece: list[Token]) -> _LeftSide | None:
     kinds = [t.kind for t in piece[:5]]
-    if len(piece) > 4 and kinds[:2] == ["name", "("] and kinds[3] == ")" and kinds[4] in _ORDERS and kinds[2] in ("name", "number"):
-        return _Call(piece[0], piece[2])
+    if (
+        len(piece) > 4
+        and kinds[:2] == ["name", "("]
+        and kinds[3] == ")"
+        and kinds[4] in _ORDERS
+        and kinds[2] in ("name", "number")
+    ):
+        return _LeftSide(piece[0], piece[2])
     return None
 
 
 def _recurrence(text: str, tokens: list[Token]) -> Recurrence:
     pieces = _clauses(tokens)
-    mains: list[tuple[_Call, list[Token]]] = []
-    bases: list[tuple[_Call, list[Token]]] = []
+    mains: list[tuple[_LeftSide, list[Token]]] = []
+    bases: list[tuple[_LeftSide, list[Token]]] = []
     limited: set[int] = set()
     for i, piece in enumerate(pieces):
         if piece[0].kind == "name" and piece[0].value in ("for", "if", "when"):
@@ -106,7 +109,7 @@ def _recurrence(text: str, tokens: list[Token]) -> Recurrence:
             if i > 0 and len(piece) > 1 and _is_condition(piece):
                 _condition(text, piece)
                 continue
-            _refuse_left(text, piece)
+            raise _left_fault(text, piece)
         if left.argument.kind == "name":
             conditional = i + 1 < len(pieces) and pieces[i + 1][0].value in ("for", "if", "when")
             calls = any(a.value == left.function.value and b.kind == "(" for a, b in pairwise(piece[5:]))
@@ -134,13 +137,13 @@ def _condition(text: str, piece: list[Token]) -> None:
         raise BoundError("expected a condition such as n > 1", text, start, max(piece[-1].start, start + 1))
 
 
-def _refuse_left(text: str, piece: list[Token]) -> None:
+def _left_fault(text: str, piece: list[Token]) -> BoundError:
     start, end = piece[0].start, piece[-1].start
     for i, token in enumerate(piece):
         if token.kind in _ORDERS:
             end = token.start
             if i > 3 and piece[0].kind == "name" and piece[1].kind == "(":
-                raise BoundError(
+                return BoundError(
                     "the left side must be the function at the size itself",
                     text,
                     start,
@@ -148,7 +151,9 @@ def _refuse_left(text: str, piece: list[Token]) -> None:
                     "write T(n) = …, and shift the calls on the right instead",
                 )
             break
-    raise BoundError("expected the form T(n) = …", text, start, max(end, start + 1), "a bound alone needs no left side")
+    return BoundError(
+        "expected the form T(n) = …", text, start, max(end, start + 1), "a bound alone needs no left side"
+    )
 
 
 def _check_relation(text: str, relation: Token) -> None:
@@ -164,13 +169,14 @@ def _check_relation(text: str, relation: Token) -> None:
         raise BoundError("a strict inequality names no growth", text, relation.start, relation.end, "write T(n) = …")
 
 
-def _main(text: str, left: _Call, piece: list[Token], bases: list[tuple[_Call, list[Token]]]) -> Recurrence:
+def _main(text: str, left: _LeftSide, piece: list[Token], bases: list[tuple[_LeftSide, list[Token]]]) -> Recurrence:
     function, variable = left.function.value, left.argument.value
     if names.function(function) or function == variable:
         raise BoundError(f"{function!r} cannot name a recurrence", text, left.function.start, left.function.end)
     names.refuse_function(text, left.function, True)
     names.refuse_function(text, left.argument, False)
-    names.checked_size(text, left.argument, piece[4:])
+    plain = {t.value for t, after in pairwise(piece[4:]) if t.kind == "name" and after.kind != "("}
+    names.checked_size(text, left.argument, plain)
     _check_relation(text, piece[4])
     body = piece[5:]
     for token in body:
@@ -179,20 +185,28 @@ def _main(text: str, left: _Call, piece: list[Token], bases: list[tuple[_Call, l
     for token in body:
         if token.kind == "name" and token.value.endswith(function) and token.value[: -len(function)] == variable:
             raise BoundError(
-                f"{token.value!r} is no known name", text, token.start, token.end, f"leave a space: {variable} {function}(…)"
+                f"{token.value!r} is no known name",
+                text,
+                token.start,
+                token.end,
+                f"leave a space: {variable} {function}(…)",
             )
     node = _parsed(text, body, function)
     meaning = Meaning(text)
     _check_names(text, body, function, variable)
     if not node.recursive:
         raise BoundError(
-            f"the right side does not call {function}", text, node.start, node.end, "write a bound without its left side"
+            f"the right side does not call {function}",
+            text,
+            node.start,
+            node.end,
+            "write a bound without its left side",
         )
     try:
         toll, calls = meaning.linear(node)
     except Outside as reason:
         raise BoundError(str(reason), text, node.start, node.end) from None
-    terms = tuple(read_term(meaning, c, call, variable, node) for c, call in calls)
+    terms = _merged(meaning, calls, variable)
     silent = [_base_is_zero(text, function, variable, base) for base in bases]
     toll_factor: Factor | None = None
     if toll.terms or toll.errors:
@@ -206,6 +220,20 @@ def _main(text: str, left: _Call, piece: list[Token], bases: list[tuple[_Call, l
     return Recurrence(terms, toll_factor, variable, function, _is_silent(silent, terms))
 
 
+def _merged(meaning: Meaning, calls: list[tuple[Value, Call]], variable: str) -> tuple[Term, ...]:
+    """One term for each argument, each coefficient checked before they are added."""
+    found: dict[Argument, tuple[Value, Call]] = {}
+    for coefficient, call in calls:
+        argument = read_term(meaning, coefficient, call, variable).argument
+        if argument in found:
+            coefficient = v.add([(1, found[argument][0]), (1, coefficient)])
+        found[argument] = (coefficient, call)
+    if len(found) > MAX_CALLS:
+        call = calls[MAX_CALLS][1]
+        meaning.fail(f"more than {MAX_CALLS} different calls are not solved", call)
+    return tuple(read_term(meaning, c, call, variable) for c, call in found.values())
+
+
 def _is_silent(zeros: list[bool], terms: tuple[Term, ...]) -> bool:
     """Whether zero base cases leave T at zero on some sizes: all are zero, or one is and the steps skip sizes."""
     if not any(zeros):
@@ -215,12 +243,18 @@ def _is_silent(zeros: list[bool], terms: tuple[Term, ...]) -> bool:
 
 
 def _check_names(text: str, body: list[Token], function: str, variable: str) -> None:
+    inside = 0
     for token, after in pairwise(body):
-        if token.kind != "name" or token.value in (function, variable) or names.function(token.value):
+        inside += {"{": 1, "}": -1}.get(token.kind, 0)
+        if inside or token.kind != "name" or token.value in (function, variable) or names.function(token.value):
             continue
         if after.kind == "(":
             raise BoundError(
-                f"unknown function {token.value!r}", text, token.start, token.end, f"known are {names.KNOWN} and {function}"
+                f"unknown function {token.value!r}",
+                text,
+                token.start,
+                token.end,
+                f"known are {names.KNOWN} and {function}",
             )
         if token.value == "e" and after.kind == "^":
             continue
@@ -233,7 +267,7 @@ def _check_names(text: str, body: list[Token], function: str, variable: str) -> 
         )
 
 
-def _base_is_zero(text: str, function: str, variable: str, base: tuple[_Call, list[Token]]) -> bool:
+def _base_is_zero(text: str, function: str, variable: str, base: tuple[_LeftSide, list[Token]]) -> bool:
     left, piece = base
     if left.function.value != function:
         raise BoundError(

@@ -56,7 +56,12 @@ def _readable_factor(name: str, f: Factor) -> str:
             return shown
     plain = _plain(f)
     parts = []
-    for key, text in (("power", name), ("log", f"(log {name})"), ("loglog", f"(log log {name})"), ("factorial", f"({name}!)")):
+    for key, text in (
+        ("power", name),
+        ("log", f"(log {name})"),
+        ("loglog", f"(log log {name})"),
+        ("factorial", f"({name}!)"),
+    ):
         if plain[key]:
             parts.append(text if plain[key] == 1 else f"{text}^{plain[key]:.5g}")
     if plain["exp_base"] != 1:
@@ -92,7 +97,7 @@ def _from_log(x: float) -> str:
 
 
 def split_table(rec: Recurrence, budget: Budget) -> list[str]:
-    """T(n)/growth(n) for an uneven split beside the even split of the same critical exponent; [] where there is none."""
+    """T(n)/growth(n) for an uneven split beside the even split of the same exponent; [] where there is none."""
     ratios = [t.argument.factor for t in rec.terms if isinstance(t.argument, Ratio)]
     weights = [t.coefficient for t in rec.terms]
     if len(ratios) < len(rec.terms) or len(set(ratios)) < 2 or not all(t.fixed() for t in rec.terms):
@@ -123,7 +128,9 @@ def split_table(rec: Recurrence, budget: Budget) -> list[str]:
         if here is None or there is None:
             break
         at = math.exp(growth.log_value(n))
-        lines.append(f"{2**exponent:>12,}  {here / at:>22.3f}  {there / at:>22.3f}  {'x ' + format(here / there, '.3g'):>8}")
+        lines.append(
+            f"{2**exponent:>12,}  {here / at:>22.3f}  {there / at:>22.3f}  {'x ' + format(here / there, '.3g'):>8}"
+        )
     return lines if len(lines) > 2 else []
 
 
@@ -144,7 +151,7 @@ def evaluate(coefficients: list[float], factors: list[float], toll: Factor, n: f
             return None
         for counts, weight in level.items():
             log_x = log_n + sum(k * lb for k, lb in zip(counts, logs, strict=True))
-            if log_x < math.log(2):
+            if log_x < math.log(2) - 1e-9:
                 total += weight
                 continue
             total += weight * math.exp(toll.log_value(math.exp(log_x)))

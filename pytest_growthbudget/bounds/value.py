@@ -33,7 +33,7 @@ from pytest_growthbudget.bounds.growth import (
 )
 from pytest_growthbudget.bounds.roots import ln_with_surds
 
-MAX_TERMS = 200
+MAX_TERMS = 40
 _counter = count(1)
 
 
@@ -115,6 +115,11 @@ def times(a: Value, b: Value) -> Value:
     return _limited(terms, errors)
 
 
+def _irrational(m: Monomial) -> bool:
+    """Whether an equal monomial may be written differently; rational exponents have one form."""
+    return any(isinstance(x, Real) for _, f in m for x in f.parts())
+
+
 def leading(value: Value) -> list[tuple[Monomial, Number]]:
     """The parts that no other part bounds, merged and proved positive.
 
@@ -126,7 +131,7 @@ def leading(value: Value) -> list[tuple[Monomial, Number]]:
         merged = list(value.terms.items())
     else:
         for m, c in value.terms.items():
-            for i, (k, d) in enumerate(merged):
+            for i, (k, d) in enumerate(merged if _irrational(m) else ()):
                 if compare_monomials(m, k) == 0:
                     merged[i] = (k, c + d)
                     break
@@ -175,6 +180,12 @@ def relative_rest(value: Value, lead: Monomial, coefficient: Number) -> Value:
     return Value(terms, tuple(multiply(e, inverse) for e in value.errors))
 
 
+def _power_of(c: Number, exponent: Number) -> Number:
+    if depends_on(c, ("base", "some")) and (isinstance(exponent, Real) or (isinstance(c, Real) and len(c.num) > 1)):
+        return unknown()
+    return power_number(c, exponent)
+
+
 def power(base: Value, exponent: Number) -> Value:
     """base^exponent for a constant exponent."""
     if not exponent:
@@ -190,7 +201,7 @@ def power(base: Value, exponent: Number) -> Value:
         ((m, c),) = base.terms.items()
         if sign(c) <= 0:
             raise Outside("a power of something that is not positive")
-        return Value({raised(m, exponent): power_number(c, exponent)})
+        return Value({raised(m, exponent): _power_of(c, exponent)})
     whole = isinstance(exponent, Fraction) and exponent.denominator == 1 and 0 < exponent <= 8
     if whole and (len(base.terms) + len(base.errors)) ** min(int(exponent), 4) <= MAX_TERMS:  # type: ignore[arg-type]
         out = base
@@ -205,7 +216,7 @@ def power(base: Value, exponent: Number) -> Value:
         return Value({raised(m, exponent): unknown() for m, _ in parts})
     lead, coefficient = parts[0]
     rest = relative_rest(base, lead, coefficient)
-    head = Value({raised(lead, exponent): power_number(coefficient, exponent)})
+    head = Value({raised(lead, exponent): _power_of(coefficient, exponent)})
     series = add([(1, number(ONE)), (1, times(number(exponent), rest))])
     squares = [multiply(a, b) for a in (*rest.terms, *rest.errors) for b in (*rest.terms, *rest.errors)]
     return times(head, _limited(dict(series.terms), [*series.errors, *_maximal(squares)]))
@@ -362,4 +373,17 @@ def rounded(value: Value, up: bool) -> Value:
     return Value(value.terms, tuple(_maximal([*value.errors, ()])))
 
 
-__all__ = ["CONSTANT", "Outside", "Value", "add", "divide", "exp", "factorial", "leading", "ln", "loosened", "number", "relative_rest"]
+__all__ = [
+    "CONSTANT",
+    "Outside",
+    "Value",
+    "add",
+    "divide",
+    "exp",
+    "factorial",
+    "leading",
+    "ln",
+    "loosened",
+    "number",
+    "relative_rest",
+]

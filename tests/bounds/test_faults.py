@@ -1,0 +1,135 @@
+"""Refusals: the place, the reason, the whole message, and the time they take."""
+
+from __future__ import annotations
+
+import json
+import pickle
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from pytest_growthbudget.bounds.budget import compare, parse_budget
+from pytest_growthbudget.bounds.language import BoundError
+
+FAULTS = json.loads((Path(__file__).parent / "invalid" / "faults.json").read_text("utf-8"))
+
+
+@pytest.mark.parametrize("entry", FAULTS, ids=[ascii(e["input"][:60]) for e in FAULTS])
+def test_refused_at_the_right_place(entry: dict[str, Any]) -> None:
+    """Each fault is found where it stands, and the words of its reason are in the message."""
+    with pytest.raises(BoundError) as caught:
+        parse_budget(entry["input"])
+    fault = caught.value
+    assert fault.position == entry["position"]
+    for words in entry["message"]:
+        assert words in fault.message + fault.hint
+    assert fault.end is not None
+    assert fault.end > entry["position"]
+
+
+WHOLE = {
+    "log n^2": """\
+this can mean (log n)^… or log(n^…)
+  log n^2
+  ~~~~~^
+hint: write log^2 n or (log n)^2 for the power, log(n^2) for the other""",
+    "T(n) = T(2n) + 1": """\
+the argument 2n does not shrink: it must be smaller than n
+  T(n) = T(2n) + 1
+           ~^
+hint: write a part of n, as in n/2, n - 1 or sqrt(n)""",
+    "(n log n": """\
+this '(' is never closed
+  (n log n
+  ^""",
+    "n log n + Ω(n)": """\
+Ω(…) is a lower bound; a budget promises an upper bound
+  n log n + Ω(n)
+            ^
+hint: write O(…), Θ(…) or the bare expression""",
+    "T(n) = 2T(n/2) + c": """\
+unknown name 'c': the size is 'n'
+  T(n) = 2T(n/2) + c
+                   ^
+hint: leave constant factors out: they do not change the growth""",
+}
+
+
+@pytest.mark.parametrize("text", WHOLE)
+def test_whole_message(text: str) -> None:
+    """Message, text, marker and hint, to the letter."""
+    with pytest.raises(BoundError) as caught:
+        parse_budget(text)
+    assert str(caught.value) == WHOLE[text]
+
+
+def test_long_text_is_cut_around_the_place() -> None:
+    """80 columns hold the place even of a long input."""
+    text = "n + " * 100 + "? + " + "n + " * 60 + "n"
+    with pytest.raises(BoundError) as caught:
+        parse_budget(text)
+    lines = str(caught.value).splitlines()
+    assert all(len(line) <= 80 for line in lines)
+    assert lines[1][lines[2].index("^")] == "?"
+
+
+HOSTILE = [
+    "n" * 10_000, "(" * 5_000, "(" * 400 + "n" + ")" * 400, "-" * 10_000, "+".join("n" * 400), "9**9**9**9",
+    "9^9^9^9", "n!" * 400, "log " * 240 + "n", "sqrt(" * 190 + "n", "(n+1)^" * 150 + "2", "n^" * 490 + "n",
+    "(" * 25 + "n+1" + ")^2" * 25, "(n+m+k+1)^8", "T(n) = " + "+".join(f"T(n/{i})" for i in range(2, 90)),
+    "T(n) = " + "+".join(f"T(n-{i})" for i in range(1, 90)) + " + 1.99999999^n",
+    "T(n) = T(n-1000000000) + 1", "T(n) = T(n-1000000000) + T(n-1) + 2^n", "T(n) = T(n-999999999999999999999) + n",
+    "T(n) = T(n/10000000000) + T(n/3) + n", "T(n) = T(0.999999999n) + T(0.000000001n) + n",
+    "T(n) = T(n/2)+T(n/3)+T(n/5)+T(n/7)+T(n/11)+n^0.999", "n^123456789012345678901234567890", "(10^100)!",
+    "123456789012345678901234567890123456789012345678901234567^n", "T(n)=" + "2*" * 400 + "T(n/2)",
+    "((((((n+1)^8+1)^8+1)^8+1)^8+1)^8+1)^8", "log(" * 28 + "n" + ")" * 28, "{x: x^99999 = x + 1}^n", "{" * 500,
+    "1" + "0" * 59, "n^0." + "0" * 50 + "1", "T(n) = 1.0000000000000000000000001 T(n/2) + 1", ";" * 900,
+    "T(n) = T(n/2) " + "; T(1) = 1" * 80, "max(" + ",".join("n" * 12) + ")", "a+b+c+d+f+g+h+i+j+k+l",
+    "(a+b)(c+d)(f+g)(h+i)(j+k)(l+p)(q+r)",
+]  # fmt: skip
+
+
+@pytest.mark.parametrize("text", HOSTILE, ids=range(len(HOSTILE)))
+def test_hostile_text_is_answered(text: str) -> None:
+    """An answer or the package's own error; work is bounded by counts, checked here by steps of the interpreter."""
+    import sys
+
+    calls = 0
+
+    def count(frame: Any, event: str, arg: object) -> None:
+        nonlocal calls
+        calls += event == "call"
+
+    before = sys.getprofile()
+    sys.setprofile(count)
+    try:
+        parse_budget(text)
+    except BoundError as fault:
+        assert str(fault)
+    finally:
+        sys.setprofile(before)
+    assert calls < 60_000
+
+
+def test_incomparable_growths_are_refused() -> None:
+    """Sizes that grow independently have no order."""
+    with pytest.raises(BoundError, match="incomparable"):
+        compare("V", "E")
+    with pytest.raises(BoundError, match="incomparable"):
+        compare("V^2 + E", "V + E log V")
+
+
+def test_error_travels_between_processes() -> None:
+    """A worker's error arrives whole."""
+    with pytest.raises(BoundError) as caught:
+        parse_budget("log n^2")
+    copy = pickle.loads(pickle.dumps(caught.value))
+    assert str(copy) == str(caught.value)
+    assert (copy.position, copy.end, copy.hint) == (0, 6, caught.value.hint)
+
+
+def test_not_text_is_refused() -> None:
+    """Anything but text is named by its type."""
+    with pytest.raises(BoundError, match="must be text, not int"):
+        parse_budget(3)  # type: ignore[arg-type]
