@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import textwrap
 from typing import Any
 
@@ -18,9 +19,9 @@ def fails(judgement: dict[str, Any]) -> bool:
     return judgement["verdict"] in ("undecided", "unmeasured") and judgement["undecided"] == "fail"
 
 
-def power(exponent: float) -> str:
+def power(exponent: float, variable: str = "n") -> str:
     """A measured exponent as a growth: `n^1.97`."""
-    return f"n^{exponent:.2f}"
+    return f"{variable}^{exponent:.2f}"
 
 
 def first_line(judgement: dict[str, Any]) -> str:
@@ -28,20 +29,34 @@ def first_line(judgement: dict[str, Any]) -> str:
     verdict, meter, theta = judgement["verdict"], judgement["meter"], judgement["theta"]
     if verdict != "exceeded" and risen.fails(judgement):
         return risen.first_line(judgement)
-    if verdict == "exceeded":
-        return f"growth budget exceeded: {meter} grows as {_observed(judgement)} where {theta} is allowed"
-    if verdict == "within":
-        return f"growth budget kept: {meter} grows as {_observed(judgement)} where {theta} is allowed"
-    return f"growth budget {verdict}: {meter} against {theta}: {judgement['reason']}"
+    if verdict == "exceeded" and _over_ceiling(judgement):
+        row = judgement["ceiling"]
+        return (
+            f"growth budget exceeded: {meter} is foreseen at {units.cost(row['cost']['estimate'], judgement['unit'])} "
+            f"for {judgement['variable']} = {units.count(row['size'])} where "
+            f"{units.cost(row['allowed'], judgement['unit'])} is allowed"
+        )
+    along = f" ({judgement['ray']})" if judgement["ray"] else ""
+    if verdict in ("exceeded", "within"):
+        word = "exceeded" if verdict == "exceeded" else "kept"
+        return f"growth budget {word}: {meter} grows as {_observed(judgement)} where {theta} is allowed{along}"
+    return f"growth budget {verdict}: {meter} against {theta}{along}: {judgement['reason']}"
+
+
+def _over_ceiling(judgement: dict[str, Any]) -> bool:
+    row = judgement["ceiling"]
+    return row is not None and row["cost"]["estimate"] > row["allowed"]
 
 
 def _observed(judgement: dict[str, Any]) -> str:
-    exponent = judgement["exponent"]
-    if exponent is None:
-        return judgement["nearest"] or "unknown"
-    if judgement["nearest"] and exponent["estimate"] > 4:
-        return str(judgement["nearest"])
-    return power(exponent["estimate"])
+    exponent, excess = judgement["exponent"], judgement["excess"]
+    if exponent is not None:
+        if judgement["nearest"] and exponent["estimate"] > 4:
+            return str(judgement["nearest"])
+        return power(exponent["estimate"], judgement["variable"])
+    if excess is not None:  # an exponential budget: the excess is a power of the growth itself
+        return f"({judgement['theta']})^{1 + excess['estimate']:.2f}"
+    return judgement["nearest"] or "an unknown growth"
 
 
 def sections(judgements: list[dict[str, Any]], failed_at: str) -> list[tuple[str, str]]:
@@ -80,15 +95,21 @@ def _facts(judgement: dict[str, Any]) -> str:
     if judgement["theta"] != judgement["bound"]:
         by = f" ({judgement['theorem']})" if judgement["theorem"] else ""
         lines.append(_fact("derived", f"{judgement['theta']}{by}"))
+    if judgement["rays"]:
+        lines.append(_fact("rays", "; ".join(f"{ray}: {verdict}" for ray, verdict in judgement["rays"])))
     exponent, excess = judgement["exponent"], judgement["excess"]
     sizes = judgement["sizes"]
     percent = f"{100 * judgement['confidence']:g} %"
     if exponent is not None:
-        over = f" over n = {units.count(sizes[0]['size'])} to {units.count(sizes[-1]['size'])}" if sizes else ""
+        over = (
+            f" over {judgement['variable']} = {units.count(sizes[0]['size'])} to {units.count(sizes[-1]['size'])}"
+            if sizes
+            else ""
+        )
         lines.append(
             _fact(
                 "observed",
-                f"{power(exponent['estimate'])}, {percent} interval {exponent['low']:.2f} to "
+                f"{power(exponent['estimate'], judgement['variable'])}, {percent} interval {exponent['low']:.2f} to "
                 f"{exponent['high']:.2f},{over}",
             )
         )
@@ -104,7 +125,9 @@ def _facts(judgement: dict[str, Any]) -> str:
             )
         )
     if judgement["bends_at"] is not None:
-        lines.append(_fact("since", f"n = {units.count(judgement['bends_at'])}"))
+        lines.append(_fact("since", f"{judgement['variable']} = {units.count(judgement['bends_at'])}"))
+    if judgement["ceiling"] is not None:
+        lines.append(_fact("ceiling", _ceiling(judgement)))
     if judgement["confirmed"]:
         lines.append(_fact("confirmed", "by a second, independent set of readings"))
     if judgement.get("drift"):
@@ -114,18 +137,31 @@ def _facts(judgement: dict[str, Any]) -> str:
     return "\n".join(lines)
 
 
+def _ceiling(judgement: dict[str, Any]) -> str:
+    row, unit = judgement["ceiling"], judgement["unit"]
+    cost = row["cost"]
+    return (
+        f"{units.cost(row['allowed'], unit)} at {judgement['variable']} = {units.count(row['size'])}; foreseen "
+        f"{units.cost(cost['estimate'], unit)} ({units.cost(cost['low'], unit)} to {units.cost(cost['high'], unit)})"
+    )
+
+
 def _table(judgement: dict[str, Any]) -> str:
     rows = judgement["sizes"]
     allowed = judgement["allowed"] or [None] * len(rows)
     ratios = [row["cost"] / limit if limit else None for row, limit in zip(rows, allowed, strict=True)]
     longest = max((ratio for ratio in ratios if ratio is not None), default=1.0)
     slopes = _local_exponents(rows)
-    lines = [f"  {'n':>12}  {'cost':>10}  {'exponent':>8}  {'x allowed':>9}"]
-    for row, ratio, slope in zip(rows, ratios, slopes, strict=True):
-        bar = "#" * round(BAR * ratio / longest) if ratio is not None else ""
+    beside = judgement["yardstick"] or [None] * len(rows)
+    column = f"  {'yardstick':>10}" if judgement["yardstick"] else ""
+    width = BAR - len(column)
+    lines = [f"  {judgement['variable']:>12}  {'cost':>10}{column}  {'exponent':>8}  {'x allowed':>9}"]
+    for row, ratio, slope, reference in zip(rows, ratios, slopes, beside, strict=True):
+        bar = "#" * round(width * ratio / longest) if ratio is not None else ""
         shown = f"{ratio:.3g}" if ratio is not None else ""
+        read = f"  {units.cost(reference, judgement['unit']):>10}" if reference is not None else ""
         lines.append(
-            f"  {units.count(row['size']):>12}  {units.cost(row['cost'], judgement['unit']):>10}  "
+            f"  {units.count(row['size']):>12}  {units.cost(row['cost'], judgement['unit']):>10}{read}  "
             f"{slope:>8}  {shown:>9}  {bar}".rstrip()
         )
     return "\n".join(lines)
@@ -133,8 +169,6 @@ def _table(judgement: dict[str, Any]) -> str:
 
 def _local_exponents(rows: list[dict[str, Any]]) -> list[str]:
     """The exponent of the cost between each size and one about an octave below."""
-    import math
-
     shown = []
     for index, row in enumerate(rows):
         below = [earlier for earlier in rows[:index] if 1.9 * earlier["size"] <= row["size"]]
@@ -150,7 +184,7 @@ def _forecast(judgement: dict[str, Any]) -> str:
     unit = judgement["unit"]
     lines = [
         "  forecast, at sizes that were not run",
-        f"  {'n':>12}  {'expected':>10}  {'interval':>24}  budget allows",
+        f"  {judgement['variable']:>12}  {'expected':>10}  {'interval':>24}  budget allows",
     ]
     for row in judgement["forecast"]:
         cost = row["cost"]
@@ -176,6 +210,8 @@ def _closing(judgement: dict[str, Any]) -> str:
 
 
 def _hint(judgement: dict[str, Any]) -> str:
+    if _over_ceiling(judgement):
+        return "the constant factor: the growth is kept, but each step is too dear for that size"
     excess = judgement["excess"]["estimate"] if judgement["excess"] else 0.0
     if excess > 3:
         return "a step that branches into several of nearly its own size, or the same subproblem solved again"
