@@ -103,8 +103,7 @@ CASES = {
         "test_bad.py::test_it: two budgets for the meter 'cpu_time'; keep one\n",
     ),
     "a size that is parametrized already": (
-        '@pytest.mark.growth_budget("n")\n@pytest.mark.parametrize("problem_size", [1, 2])\n'
-        "def test_it(numbers): ...",
+        '@pytest.mark.growth_budget("n")\n@pytest.mark.parametrize("problem_size", [1, 2])\ndef test_it(numbers): ...',
         """\
         test_bad.py::test_it: problem_size is parametrized already; a growth budget sets
         the sizes itself: take that parametrization away, or budget another size with
@@ -203,9 +202,7 @@ PYPROJECT = {
 
 @pytest.mark.parametrize("extra", [(), ("-n", "2")], ids=["alone", "xdist"])
 @pytest.mark.parametrize("case", PYPROJECT, ids=lambda name: name.replace(" ", "-"))
-def test_a_bad_pyproject_is_a_usage_error(
-    pytester: pytest.Pytester, case: str, extra: tuple[str, ...]
-) -> None:
+def test_a_bad_pyproject_is_a_usage_error(pytester: pytest.Pytester, case: str, extra: tuple[str, ...]) -> None:
     table, expected = PYPROJECT[case]
     pytester.makepyprojecttoml(table)
     pytester.makepyfile("def test_plain(): ...")

@@ -165,9 +165,7 @@ def test_parametrized_fixtures(suite: pytest.Pytester) -> None:
         """
     )
     result = suite.runpytest("-v")
-    result.stdout.fnmatch_lines(
-        ["test_it.py::test_sum[[]up] PASSED*", "test_it.py::test_sum[[]down] PASSED*"]
-    )
+    result.stdout.fnmatch_lines(["test_it.py::test_sum[[]up] PASSED*", "test_it.py::test_sum[[]down] PASSED*"])
 
 
 def test_skips_and_expected_failures(suite: pytest.Pytester) -> None:
@@ -248,7 +246,9 @@ def test_a_fixture_that_fails_shows_the_size(suite: pytest.Pytester) -> None:
     )
     result = suite.runpytest()
     result.assert_outcomes(failed=1, passed=1)
-    result.stdout.fnmatch_lines(["E*RuntimeError: no more", "the test failed at problem_size = 40; no budget was judged"])
+    result.stdout.fnmatch_lines(
+        ["E*RuntimeError: no more", "the test failed at problem_size = 40; no budget was judged"]
+    )
 
 
 def test_last_failed_and_exit_first(suite: pytest.Pytester) -> None:

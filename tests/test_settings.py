@@ -8,7 +8,6 @@ import pytest
 
 from pytest_growthbudget import settings as s
 
-
 HEARS = """
 import pytest
 

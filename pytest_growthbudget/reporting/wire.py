@@ -52,12 +52,11 @@ def from_wire(wire: dict[str, Any]) -> Judgement:
     for name in ("excess", "exponent"):
         values[name] = _interval(values.get(name))
     values["sizes"] = tuple(SizeRow(**row) for row in values.get("sizes", ()))
-    values["forecast"] = tuple(
-        ForecastRow(size=row["size"], cost=_needed(row["cost"]), allowed=row["allowed"])
-        for row in values.get("forecast", ())
-    )
-    for name in ("steps", "notes", "allowed"):
+    values["forecast"] = tuple(_forecast_row(row) for row in values.get("forecast", ()))
+    values["ceiling"] = None if values.get("ceiling") is None else _forecast_row(values["ceiling"])
+    for name in ("steps", "notes", "allowed", "yardstick"):
         values[name] = tuple(values.get(name, ()))
+    values["rays"] = tuple((ray, verdict) for ray, verdict in values.get("rays", ()))
     return Judgement(**values)
 
 
@@ -65,5 +64,5 @@ def _interval(value: dict[str, float] | None) -> Interval | None:
     return None if value is None else Interval(**value)
 
 
-def _needed(value: dict[str, float]) -> Interval:
-    return Interval(**value)
+def _forecast_row(row: dict[str, Any]) -> ForecastRow:
+    return ForecastRow(size=row["size"], cost=Interval(**row["cost"]), allowed=row["allowed"])

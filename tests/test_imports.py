@@ -1,0 +1,63 @@
+"""A run without budgets must not pay for numpy and scipy, and every module imports without a warning."""
+
+from __future__ import annotations
+
+import subprocess
+import sys
+from pathlib import Path
+
+import pytest
+
+import pytest_growthbudget
+
+PACKAGE = Path(pytest_growthbudget.__file__).parent
+HEAVY = "('numpy', 'scipy', 'jinja2', 'matplotlib')"
+LIGHT = [
+    "pytest_growthbudget",
+    "pytest_growthbudget.plugin",
+    "pytest_growthbudget.settings",
+    "pytest_growthbudget.trial",
+]
+LIGHT += ["pytest_growthbudget.bounds.budget", "pytest_growthbudget.reporting.wire", "pytest_growthbudget.__main__"]
+
+
+def run(code: str) -> str:
+    done = subprocess.run([sys.executable, "-W", "error", "-c", code], capture_output=True, text=True, check=False)
+    assert done.returncode == 0, done.stderr
+    return done.stdout.strip()
+
+
+@pytest.mark.parametrize("module", LIGHT)
+def test_what_a_run_without_budgets_imports_is_light(module: str) -> None:
+    assert run(f"import sys, {module}; print([name for name in {HEAVY} if name in sys.modules])") == "[]"
+
+
+def test_a_run_without_budgets_imports_nothing_heavy(pytester: pytest.Pytester) -> None:
+    pytester.makepyfile(
+        f"""
+        import sys
+
+        def test_plain():
+            assert [name for name in {HEAVY} if name in sys.modules] == []
+            assert "pytest_growthbudget.plugin" in sys.modules
+        """
+    )
+    pytester.runpytest_subprocess("-p", "no:hypothesispytest").assert_outcomes(passed=1)
+
+
+def test_every_module_imports_without_a_warning() -> None:
+    names = [
+        ".".join(("pytest_growthbudget", *path.relative_to(PACKAGE).with_suffix("").parts))
+        for path in sorted(PACKAGE.rglob("*.py"))
+        if path.name not in ("__init__.py", "__main__.py")
+        and (path.name != "monitoring.py" or sys.version_info >= (3, 12))
+    ]
+    assert len(names) > 30
+    run("import importlib\nfor name in " + repr(names) + ": importlib.import_module(name)")
+
+
+def test_public_names_are_loaded_on_first_use() -> None:
+    assert run("import pytest_growthbudget as p; print(p.parse_budget('n log n').theta)") == "n log n"
+    assert set(pytest_growthbudget.__all__) <= set(dir(pytest_growthbudget))
+    with pytest.raises(AttributeError, match="no attribute 'nonsense'"):
+        _ = pytest_growthbudget.nonsense
