@@ -14,28 +14,15 @@ from typing import Any, Final
 
 from pytest_growthbudget.fitting.drift import exponent_over
 from pytest_growthbudget.fitting.excess import FEWEST_SIZES
-from pytest_growthbudget.reporting.records import Record
+from pytest_growthbudget.reporting.records import Record, is_counted, is_flat
 
 #: The smallest rise of an exponent that the ratchet reports: clocks, and meters that count.
 CLOCK_MARGIN: Final = 0.10
 COUNT_MARGIN: Final = 0.03
 #: Bytes that fit the caches of any machine that tests run on.
 RESIDENT: Final = 2.0**20
-_COUNTED: Final = ("steps", "peak_memory", "tally")
-_FLAT: Final = 0.2
 
 Facts = dict[str, Any]
-
-
-def is_counted(meter: str) -> bool:
-    """Whether the meter's readings are counts without noise; a meter of the user's own is taken to have noise."""
-    return meter.partition(":")[0] in _COUNTED
-
-
-def is_flat(judgement: Mapping[str, Any]) -> bool:
-    """Whether the budget hardly grows, so that its exponent is that of the whole cost at the largest size."""
-    exponent, excess = judgement["exponent"], judgement["excess"]
-    return bool(exponent and excess and exponent["estimate"] - excess["estimate"] < _FLAT)
 
 
 def same_machine(one: Mapping[str, Any], other: Mapping[str, Any]) -> bool:

@@ -12,15 +12,20 @@ import os
 import tempfile
 from collections.abc import Iterable, Mapping, Sequence
 from contextlib import suppress
-from dataclasses import dataclass, field
+from dataclasses import MISSING, dataclass, field, fields
+from functools import cache
 from pathlib import Path
 from typing import Any
 
+from pytest_growthbudget.fitting.judgement import Judgement
 from pytest_growthbudget.reporting import files
 from pytest_growthbudget.reporting.schema import record_check
+from pytest_growthbudget.reporting.wire import plain
 
 SCHEMA = 1
 JOURNAL = ".unfinished"
+_COUNTED = ("steps", "peak_memory", "tally")
+_FLAT = 0.2
 
 Record = dict[str, Any]
 
@@ -97,7 +102,16 @@ def parse_line(line: bytes) -> tuple[Record | None, str]:
         mend = "; upgrade pytest_growthbudget to read it" if version > SCHEMA else ""
         return None, f"schema {version} is {age} than the schema {SCHEMA} that this version reads{mend}"
     message = record_check()(record, "")
-    return (None, f"not a record: {message}") if message else (record, "")
+    if message:
+        return None, f"not a record: {message}"
+    record["judgement"] = {**_later_entries(), **record["judgement"]}
+    return record, ""
+
+
+@cache
+def _later_entries() -> dict[str, Any]:
+    """What a record written before a judgement had some entry says there."""
+    return {item.name: plain(item.default) for item in fields(Judgement) if item.default is not MISSING}
 
 
 def _not_a_number(text: str) -> float:
@@ -244,3 +258,14 @@ def in_time(records: Sequence[Record]) -> list[Record]:
 def latest(records: Sequence[Record]) -> dict[tuple[str, str], Record]:
     """The newest record of each budget."""
     return {budget_key(record): record for record in in_time(records)}
+
+
+def is_counted(meter: str) -> bool:
+    """Whether the meter's readings are counts without noise; a meter of the user's own is taken to have noise."""
+    return meter.partition(":")[0] in _COUNTED
+
+
+def is_flat(judgement: Mapping[str, Any]) -> bool:
+    """Whether the budget hardly grows, so that its exponent is that of the whole cost at the largest size."""
+    exponent, excess = judgement["exponent"], judgement["excess"]
+    return bool(exponent and excess and exponent["estimate"] - excess["estimate"] < _FLAT)

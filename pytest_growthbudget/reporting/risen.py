@@ -18,7 +18,8 @@ def first_line(judgement: Mapping[str, Any]) -> str:
     now, before = drift["now"]["estimate"], drift["accepted"]["estimate"]
     if drift["of"] == "excess":
         return f"growth has drifted: {meter} has an excess of {now:.2f} where {before:.2f} was accepted"
-    return f"growth has drifted: {meter} grows as n^{now:.2f} where n^{before:.2f} was accepted"
+    name = judgement["variable"]
+    return f"growth has drifted: {meter} grows as {name}^{now:.2f} where {name}^{before:.2f} was accepted"
 
 
 def fact(judgement: Mapping[str, Any]) -> str:
@@ -31,7 +32,7 @@ def fact(judgement: Mapping[str, Any]) -> str:
     over = ""
     if drift["over"]:
         low, high = drift["over"]
-        over = f" over n = {low:,.0f} to {high:,.0f}"
+        over = f" over {judgement['variable']} = {low:,.0f} to {high:,.0f}"
     said = f"{drift['of']} {_interval(drift['now'])}{over}; accepted on {drift['since'][:10]}: "
     said += _interval(drift["accepted"])
     if drift["risen"]:
