@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Sequence
+from functools import partial
 from typing import Final
 
 import numpy as np
@@ -14,7 +15,7 @@ from pytest_growthbudget.fitting.excess import (
     Mixture,
     Observations,
     fit_lines,
-    local_exponent,
+    observe,
     walk,
     whitened,
 )
@@ -42,22 +43,40 @@ _GREATEST_LOG_COST: Final = math.log(1e21)
 _WIDEST: Final = 1.0
 
 
-def forecast_cost(
-    seen: Observations, log_growth: LogGrowth, size: float, *, exponential: bool, confidence: float, noise: float
-) -> Interval:
-    """The cost expected at a larger size, with the interval that holds it with probability `confidence`.
+def forecast(
+    seen: Observations, log_growth: LogGrowth, *, exponential: bool, confidence: float, noise: float
+) -> tuple[ForecastRow, ...]:
+    """Forecasts at a few larger sizes, as far as the cost stays below thirty thousand years in nanoseconds."""
+    levels = ((1 - confidence) / 2, 0.5, (1 + confidence) / 2)
+    fitted, growth = seen, log_growth
+    base = None if exponential else steep_base(seen)
+    if base is not None:
+        growth = partial(_steps, math.log(base))
+        fitted, exponential = observe(seen.sizes, seen.costs, growth, exponential=True), True
+    rows = []
+    for size in forecast_sizes(int(seen.sizes[-1]), exponential=exponential):
+        mixture = forecast_log_cost(fitted, growth, size, exponential=exponential, noise=noise)
+        low, middle, high = mixture.quantiles(levels)
+        if middle > _GREATEST_LOG_COST:
+            break
+        cost = Interval(estimate=_exp(middle), low=_exp(low), high=_exp(high))
+        rows.append(ForecastRow(size=size, cost=cost, allowed=allowed_cost(seen, log_growth, size)))
+    return tuple(rows)
+
+
+def _steps(log_factor: float, size: float) -> float:
+    return log_factor * size
+
+
+def forecast_log_cost(
+    seen: Observations, log_growth: LogGrowth, size: float, *, exponential: bool, noise: float
+) -> Mixture:
+    """The log of the cost expected at a larger size.
 
     The prediction of each line is that of universal kriging (Cressie 1993, "Statistics for Spatial Data", section
     3.4 [from memory]): the walk goes on from where the largest size left it, so the interval widens with the
     distance. The lines are averaged as for the excess. The white noise of a single reading is left out.
     """
-    low, middle, high = _log_cost(seen, log_growth, size, exponential=exponential, noise=noise).quantiles(
-        ((1 - confidence) / 2, 0.5, (1 + confidence) / 2)
-    )
-    return Interval(estimate=_exp(middle), low=_exp(low), high=_exp(high))
-
-
-def _log_cost(seen: Observations, log_growth: LogGrowth, size: float, *, exponential: bool, noise: float) -> Mixture:
     lines = fit_lines(seen, noise)
     plain = lines.kind < 2
     allowed = log_growth(size)
@@ -94,25 +113,6 @@ def allowed_cost(seen: Observations, log_growth: LogGrowth, size: float) -> floa
 def _scale(seen: Observations) -> float:
     few = max(3, len(seen) // 3)
     return float(np.median((np.log(seen.costs) - seen.log_growth)[:few]))
-
-
-def forecast(
-    seen: Observations, log_growth: LogGrowth, *, exponential: bool, confidence: float, noise: float
-) -> tuple[ForecastRow, ...]:
-    """Forecasts at a few multiples of the largest size, as far as the cost stays below 30 thousand years."""
-    rows = []
-    for size in forecast_sizes(int(seen.sizes[-1]), exponential=exponential):
-        log_cost = _log_cost(seen, log_growth, size, exponential=exponential, noise=noise)
-        if log_cost.quantiles((0.5,))[0] > _GREATEST_LOG_COST:
-            break
-        rows.append(
-            ForecastRow(
-                size=size,
-                cost=forecast_cost(seen, log_growth, size, exponential=exponential, confidence=confidence, noise=noise),
-                allowed=allowed_cost(seen, log_growth, size),
-            )
-        )
-    return tuple(rows)
 
 
 def forecast_sizes(largest: int, *, exponential: bool) -> tuple[int, ...]:
@@ -164,9 +164,8 @@ def nearest_growth(seen: Observations, exponent: Interval) -> str | None:
 
     Where the cost is so steep that a constant factor a step of n fits better than a power, it is named as that.
     """
-    x, y = np.log(seen.sizes), np.log(seen.costs)
-    if exponent.estimate > _STEEP and _misfit(seen.sizes, y) < _misfit(x, y):
-        base = math.exp(min(float(np.polyfit(seen.sizes, y, 1)[0]), 50.0))
+    base = steep_base(seen)
+    if base is not None:
         return f"{base:.2g}^n"
     if exponent.high - exponent.low > _WIDEST:
         return None
@@ -176,9 +175,24 @@ def nearest_growth(seen: Observations, exponent: Interval) -> str | None:
 
     def distance(growth: LogGrowth) -> float:
         values = np.array([growth(size) for size in seen.sizes.tolist()])
-        return abs(float(np.polyfit(x, values, 1)[0]) - exponent.estimate)
+        return abs(_slope(np.log(seen.sizes), values) - exponent.estimate)
 
     return min(known, key=lambda each: distance(each[1]))[0]
+
+
+def steep_base(seen: Observations) -> float | None:
+    """The factor by which the cost grows with each step of n, where that fits better than a power of n.
+
+    Only steep costs are looked at: a power below 3.5 over the sizes is never called exponential.
+    """
+    x, y = np.log(seen.sizes), np.log(seen.costs)
+    if _slope(x, y) <= _STEEP or _misfit(seen.sizes, y) >= _misfit(x, y):
+        return None
+    return math.exp(min(_slope(seen.sizes, y), 50.0))
+
+
+def _slope(regressor: Array, y: Array) -> float:
+    return float(np.polyfit(regressor, y, 1)[0])
 
 
 def _misfit(regressor: Array, y: Array) -> float:
@@ -192,11 +206,6 @@ def growth_text(exponent: float) -> str:
     if rounded == 0:
         return "1"
     return "n" if rounded == 1 else f"n^{rounded:.2f}"
-
-
-def allowed_exponent(log_growth: LogGrowth, size: float) -> float:
-    """The local exponent that the budget allows at a size."""
-    return local_exponent(log_growth, size)
 
 
 def _exp(value: float) -> float:

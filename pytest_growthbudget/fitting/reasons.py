@@ -17,6 +17,11 @@ NO_CURVE: Final = (
     "so it cannot be called exceeded"
 )
 
+NOTHING_COUNTED: Final = (
+    "nothing was counted at any size; see that the body does what the meter counts, and that a tally is spelt "
+    "as in the budget"
+)
+
 _SHORT_OF: Final = {
     "": "the cost soon grows too dear to go further; use a smaller `smallest`",
     "largest": "`largest` is too near to the smallest size that can be read; raise `largest` or lower `smallest`",

@@ -3,6 +3,16 @@
 A looks at costs up to 5 ms on cache-resident sizes, B at every size up to 32 ms, C at sizes up to 160 ms. A stage
 ends the run when its readings decide, and nothing is exceeded until a second, independent set of readings agrees.
 The thresholds were chosen on recorded readings; `tests/studies/replay.py` prints the error rates.
+
+Where the parts are:
+
+- memory allowance, footprints and costs within the budget: `allowance.allowance`;
+- cheap bodies: `verdict.is_cheap`; few sizes: `verdict.rises_enough`; no curve: `verdict.exceeds_uncurved`;
+- the last ten sizes alone: `_Clock.windows`;
+- the wider limit on a hidden term: `Limits.within_hidden`; flat budgets: `verdict.is_flat`;
+- within on deflated costs: `_Clock.believed_within`; suspicion: the same, and at the end of `_Clock.stage_a`;
+- the look ahead: `_Clock.looks_ahead_well`; stage C: `_Clock.stage_c`; time that ran out: `_Clock.cut_short`;
+- exponential budgets, by their own log as regressor: `excess.observe`; the ladder itself: `measuring.campaign`.
 """
 
 from __future__ import annotations

@@ -68,7 +68,15 @@ class Run:
         return self.gathered(several)
 
     def gathered(self, several: Sequence[Series]) -> Evidence | None:
-        """Series of this ladder as evidence."""
+        """Series of this ladder as evidence.
+
+        Counts that are zero at some sizes only are all taken one higher: logs need that, and the offset in the
+        model takes it out again.
+        """
+        if self.promise.deterministic and any(self.ladder.costs):
+            low = min((cost for series in several for read in series.costs for cost in read), default=1.0)
+            if low <= 0:
+                several = [_one_higher(series) for series in several]
         footprints = dict(zip(self.ladder.sizes, self.ladder.footprints, strict=True))
         return gather(self.promise, footprints, several, self.curve, self.noise)
 
@@ -108,3 +116,8 @@ class Run:
         """How many sizes of the ladder, from the smallest on, keep to a cost and a footprint."""
         ladder = zip(self.ladder.costs, self.ladder.footprints, strict=True)
         return sum(each <= cost and touched <= footprint for each, touched in ladder)
+
+
+def _one_higher(series: Series) -> Series:
+    costs = tuple(tuple(cost + 1 for cost in read) for read in series.costs)
+    return Series(sizes=series.sizes, costs=costs, complete=series.complete)
