@@ -126,8 +126,10 @@ CASES = {
         """,
     ),
     "a property test": (
-        "from hypothesis import given, strategies\n"
-        '@pytest.mark.growth_budget("n")\n@given(strategies.integers())\ndef test_it(numbers, x): ...',
+        (
+            "from hypothesis import given, strategies\n"
+            '@pytest.mark.growth_budget("n")\n@given(strategies.integers())\ndef test_it(numbers, x): ...'
+        ),
         """\
         test_bad.py::test_it: a growth budget cannot stand on a @given test, whose body
         runs many examples a call; put it on a plain test that builds its workload from

@@ -217,10 +217,8 @@ def test_command_line_before_pyproject(pytester: pytest.Pytester) -> None:
 
 
 def test_the_marker_is_registered_with_its_signature(pytester: pytest.Pytester) -> None:
-    result = pytester.runpytest("--markers")
-    result.stdout.fnmatch_lines(
-        [
-            "@pytest.mark.growth_budget(bound, [*], meter='cpu_time', vary=None, smallest=None, largest=None, "
-            "slack=None, confidence=None, time_limit=None, undecided=None): *"
-        ]
+    line = next(
+        line for line in pytester.runpytest("--markers").outlines if line.startswith("@pytest.mark.growth_budget")
     )
+    assert line.startswith("@pytest.mark.growth_budget(bound, *, yardstick=None, meter='cpu_time', vary=None, ")
+    assert all(f"{name}=" in line for name in s.marker_arguments()[1:])
