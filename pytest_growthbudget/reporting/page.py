@@ -6,13 +6,14 @@ Needs jinja2 and matplotlib, which the extra `page` installs; nothing else in th
 from __future__ import annotations
 
 import math
+import re
 from collections import Counter
 from collections.abc import Mapping, Sequence
 from importlib import resources
 from typing import Any
 
 from jinja2 import Environment, StrictUndefined
-from markupsafe import Markup
+from markupsafe import Markup, escape
 
 from pytest_growthbudget.reporting import risen, units
 from pytest_growthbudget.reporting.curves import Curves, curves
@@ -39,6 +40,9 @@ _ENVIRONMENT = (
     ("pytest_growthbudget", "environment", "version"),
 )
 
+#: After these a node id may be broken; not within the escape of a sign.
+_PLACES = re.compile(r"(::|[/_.\[,-])")
+
 Facts = list[tuple[str, str]]
 
 
@@ -56,6 +60,7 @@ def render(records: Sequence[Record]) -> str:
     counts = Counter(str(budget["verdict"]) for budget in budgets)
     jinja = Environment(autoescape=True, undefined=StrictUndefined, trim_blocks=True, lstrip_blocks=True)
     jinja.globals["mark"] = _mark
+    jinja.filters["breakable"] = _breakable
     return jinja.from_string(_resource("page.html.j2")).render(
         total=total_line([record["judgement"] for record in records]),
         budgets=budgets,
@@ -69,6 +74,11 @@ def render(records: Sequence[Record]) -> str:
 
 def _resource(name: str) -> str:
     return resources.files("pytest_growthbudget.reporting").joinpath(name).read_text(encoding="utf-8")
+
+
+def _breakable(text: str) -> Markup:
+    """The text with places where a narrow line may break: a node id has none of its own."""
+    return Markup(_PLACES.sub("\\1<wbr>", str(escape(text))))
 
 
 def _mark(budget: Mapping[str, Any]) -> Markup:
@@ -96,9 +106,9 @@ def _budget(record: Record, key: str, *, several: bool, opened: bool) -> dict[st
         "meter": judgement["meter"],
         "theta": judgement["theta"],
         "variable": judgement["variable"],
-        "exponent": _interval(judgement["exponent"]),
+        "exponent": judgement["exponent"],
         "exponent_sort": _estimate(judgement["exponent"]),
-        "excess": _interval(judgement["excess"]),
+        "excess": judgement["excess"],
         "excess_sort": _estimate(judgement["excess"]),
         "seconds": units.seconds(judgement["seconds"]),
         "seconds_sort": judgement["seconds"],
@@ -106,6 +116,7 @@ def _budget(record: Record, key: str, *, several: bool, opened: bool) -> dict[st
         "first_line": first_line(judgement),
         "percent": _percent(judgement),
         "plot": Markup(_plot(drawn, record, key)) if drawn else "",
+        "bends_at": units.count(judgement["bends_at"]) if judgement["bends_at"] is not None else "",
         "has_budget_line": bool(drawn and drawn.budget),
         "has_forecast": bool(drawn and len(drawn.fit) > len(drawn.readings)),
         "facts": _facts(judgement) + ([("run", record["run"]["id"])] if several else []),

@@ -28,7 +28,7 @@ _PAINT = {
     "--ink": "#010106",
     "--quiet": "#010107",
 }
-_SIZE = (5.2, 3.5)
+_SIZE = (4.5, 3.2)
 _STYLE = {"svg.fonttype": "none", "svg.hashsalt": "growth", "path.simplify": False, "font.size": 10}
 _MARGIN = 0.12
 
@@ -37,7 +37,7 @@ def draw(curves: Curves, *, unit: str, variable: str, key: str, title: str, desc
     """The SVG element. `key` makes the ids in it the only ones of the page."""
     with rc_context(_STYLE):
         figure = Figure(figsize=_SIZE)
-        axes = figure.add_axes((0.155, 0.15, 0.825, 0.82))
+        axes = figure.add_axes((0.175, 0.16, 0.8, 0.81))
         _lay_out(axes, curves, unit)
         axes.set_xlabel(f"problem size {variable}", color=_PAINT["--ink"])
         _draw_curves(axes, curves)
@@ -75,7 +75,7 @@ def _widened(low: float, high: float, *, linear: bool) -> tuple[float, float]:
 
 def _tick(axis: Any, low: float, high: float, shown: Any, *, linear: bool) -> None:
     axis.set_minor_locator(NullLocator())
-    axis.set_major_formatter(FuncFormatter(lambda value, _: shown(value)))
+    axis.set_major_formatter(FuncFormatter(lambda value, _: shown(value).replace(".0 ", " ")))
     if linear:
         axis.set_major_locator(MaxNLocator(6, integer=True))
         return
