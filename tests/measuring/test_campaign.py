@@ -47,9 +47,10 @@ class Bench:
 
 def asks(*requests: Any) -> Generator[Any, Any, list[Any]]:
     """A rule that makes `requests` and returns the answers."""
-    answers = []
+    answers: list[Any] = []
     for request in requests:
-        answers.append((yield request))
+        answer = yield request
+        answers.append(answer)
     return answers
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import signal
 import threading
 import time
@@ -33,10 +34,8 @@ def test_a_guarded_call_is_interrupted() -> None:
 def test_a_body_that_catches_every_exception_is_interrupted_too() -> None:
     def stubborn() -> None:
         while True:
-            try:
+            with contextlib.suppress(Exception):
                 forever()
-            except Exception:  # noqa: PERF203
-                pass
 
     watch = Watch(0.05)
     with watch.start():
