@@ -142,7 +142,7 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
     ceiling: ForecastRow | None = None
     try:
         with watch.start():
-            finding = campaign.run(decide(promise))
+            finding = on_one_scale(campaign.run(decide(promise)), log_growth)
         notes = notes_of(meter)
         if plan.at is not None and plan.ceiling is not None:
             finding, ceiling = under_ceiling(finding, promise, plan.at, plan.ceiling)
@@ -177,11 +177,31 @@ def _name(reference: object) -> str:
 
 def allowed(finding: Finding, log_growth: Callable[[float], float]) -> tuple[float, ...]:
     """What the budget allows at each size of `finding`, scaled to the costs at its three smallest sizes."""
+    scale = _scale(finding, log_growth)
+    return () if scale is None else tuple(_allowed_at(row.size, scale, log_growth) for row in finding.sizes)
+
+
+def on_one_scale(finding: Finding, log_growth: Callable[[float], float]) -> Finding:
+    """`finding`, with what the budget allows at the sizes foreseen on the scale of `allowed`.
+
+    A rule may have judged the last sizes alone, and scaled its forecast to those.
+    """
+    scale = _scale(finding, log_growth)
+    if scale is None:
+        return finding
+    rows = tuple(replace(row, allowed=_allowed_at(row.size, scale, log_growth)) for row in finding.forecast)
+    return replace(finding, forecast=rows)
+
+
+def _scale(finding: Finding, log_growth: Callable[[float], float]) -> float | None:
     rows = [row for row in finding.sizes if row.cost > 0]
     if not rows:
-        return ()
-    scale = statistics.median(math.log(row.cost) - log_growth(row.size) for row in rows[:3])
-    return tuple(math.exp(min(scale + log_growth(row.size), 700.0)) for row in finding.sizes)
+        return None
+    return statistics.median(math.log(row.cost) - log_growth(row.size) for row in rows[:3])
+
+
+def _allowed_at(size: int, scale: float, log_growth: Callable[[float], float]) -> float:
+    return math.exp(min(scale + log_growth(size), 700.0))
 
 
 def under_ceiling(finding: Finding, promise: Promise, at: int, ceiling: float) -> tuple[Finding, ForecastRow | None]:

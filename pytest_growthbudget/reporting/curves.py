@@ -1,7 +1,8 @@
 """The curves of a judgement's plot, from its record alone: readings, fit with its band, budget, forecast.
 
 The fit is the model of the verdict, cost = c + a · g(n) · n^δ with c ≥ 0, at the δ that the record tells and its
-interval's ends; c and a are those that leave the smallest relative residuals. Beyond the sizes that were read the
+interval's ends; c and a are those that leave the smallest relative residuals. Where the budget is flat, δ is that at
+the largest size, and the fit is drawn about there alone. Beyond the sizes that were read the
 fit and its band are the forecast and its interval.
 """
 
@@ -77,9 +78,12 @@ def _fitted(
         limits, steepness = [1.0] * len(sizes), judgement["exponent"]
     if steepness is None:
         return [], []
-    offset = not is_flat(judgement)
+    flat = is_flat(judgement)
+    if flat:  # the excess is that at the largest size, so it is drawn about there alone
+        top = max(3, len(sizes) // 4)
+        sizes, costs, limits = sizes[-top:], costs[-top:], limits[-top:]
     at = {
-        name: _curve(sizes, costs, _shape(sizes, limits, steepness[name], exponential=exponential), offset=offset)
+        name: _curve(sizes, costs, _shape(sizes, limits, steepness[name], exponential=exponential), offset=not flat)
         for name in ("low", "estimate", "high")
     }
     fit = list(zip(sizes, at["estimate"], strict=True))
