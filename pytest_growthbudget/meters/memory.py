@@ -34,9 +34,10 @@ class PeakMemory:
         self._notes: tuple[str, ...] = ()
 
     def start(self) -> None:
-        # Garbage that is due would otherwise be freed during the body, at a moment that is not the body's
-        # doing.
-        gc.collect()
+        # Garbage that is due would otherwise be freed during the body, at a moment that is not the body's doing.
+        # While the collector is off nothing is.
+        if gc.isenabled():
+            gc.collect()
         if not tracemalloc.is_tracing():
             tracemalloc.start()
             self._own = True

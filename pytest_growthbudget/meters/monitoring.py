@@ -33,7 +33,7 @@ assert sys.version_info >= (3, 12)
 _monitoring = sys.monitoring
 _EVENTS = _monitoring.events
 _CANDIDATES = (3, 4, 5, 2, 0)  # 3 and 4 have no meaning of their own; 1 is coverage's
-_QUICK_LIMIT = 1 << 19
+_QUICK_LIMIT = 1 << 21
 
 Callback = Callable[..., Any]
 

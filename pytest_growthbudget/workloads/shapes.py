@@ -248,7 +248,7 @@ STRINGS: Final[tuple[Shape[str], ...]] = (
 GRAPHS: Final[tuple[Shape[Graph], ...]] = (
     Shape("path", _path, "vertices; n - 1 edges"),
     Shape("star", _star, "vertices, all joined to vertex 0; n - 1 edges"),
-    Shape("grid", _grid, "vertices, exactly, in rows of isqrt(n), the last one shorter; under 2n edges"),
+    Shape("grid", _grid, "vertices, exactly, in rows of isqrt(n), the last may be short; under 2n edges"),
     Shape("complete", _complete, "vertices; n (n - 1) / 2 edges"),
     Shape("random_sparse", _random_sparse, "vertices, connected; 2n - 2 edges, or all there are when n < 4"),
     Shape("binary_tree", _binary_tree, "vertices, the children of v being 2v + 1 and 2v + 2; n - 1 edges"),
