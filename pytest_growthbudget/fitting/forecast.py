@@ -12,6 +12,7 @@ import numpy as np
 from pytest_growthbudget.fitting.excess import (
     WALK_SHARES,
     Array,
+    Lines,
     Mixture,
     Observations,
     fit_lines,
@@ -53,9 +54,10 @@ def forecast(
     if base is not None:
         growth = partial(_steps, math.log(base))
         fitted, exponential = observe(seen.sizes, seen.costs, growth, exponential=True), True
+    lines = fit_lines(fitted, noise)
     rows = []
     for size in forecast_sizes(int(seen.sizes[-1]), exponential=exponential):
-        mixture = forecast_log_cost(fitted, growth, size, exponential=exponential, noise=noise)
+        mixture = log_cost_at(fitted, lines, growth(size), growth(size) if exponential else math.log(size))
         low, middle, high = mixture.quantiles(levels)
         if middle > _GREATEST_LOG_COST:
             break
@@ -68,19 +70,15 @@ def _steps(log_factor: float, size: float) -> float:
     return log_factor * size
 
 
-def forecast_log_cost(
-    seen: Observations, log_growth: LogGrowth, size: float, *, exponential: bool, noise: float
-) -> Mixture:
-    """The log of the cost expected at a larger size.
+def log_cost_at(seen: Observations, lines: Lines, allowed: float, regressor: float) -> Mixture:
+    """The log of the cost expected at a larger size, given by its log growth and its regressor.
 
     The prediction of each line is that of universal kriging (Cressie 1993, "Statistics for Spatial Data", section
     3.4 [from memory]): the walk goes on from where the largest size left it, so the interval widens with the
     distance. The lines are averaged as for the excess. The white noise of a single reading is left out.
     """
-    lines = fit_lines(seen, noise)
     plain = lines.kind < 2
-    allowed = log_growth(size)
-    at = np.array([allowed if exponential else math.log(size)])
+    at = np.array([regressor])
     ahead = float(at[0] - seen.regressor[-1])
     one, tilt, target = lines.one[plain], lines.tilt[plain], lines.target[plain]
     level, slope, rss, det = lines.level[plain], lines.slope[plain], lines.rss[plain], lines.det[plain]

@@ -41,6 +41,10 @@ def over(evidence: Evidence) -> str:
     return f"n = {evidence.seen.sizes[0]:.0f} to {evidence.seen.sizes[-1]:.0f}"
 
 
+def _two(value: float) -> str:
+    return f"{round(value, 2) + 0.0:.2f}"  # no -0.00
+
+
 def within(evidence: Evidence, limits: Limits, *, deflated: bool) -> str:
     memory = ", once memory is allowed for," if deflated else ""
     return f"over {over(evidence)} the excess{memory} is below the limit of {limits.within:.2f}"
@@ -50,16 +54,23 @@ BY_SECOND_SET: Final = ", and a second set of readings agrees"
 BY_CLIMB: Final = ", and the first calls at each size agree"
 
 
-def exceeded(evidence: Evidence, excess: Interval, limits: Limits, *, agreed: str) -> str:
-    low, slack = excess.low, limits.exceeded
-    return f"over {over(evidence)} the excess is at least {low:.2f}, above the slack of {slack:.2f}{agreed}"
-
-
-def wide(evidence: Evidence, excess: Interval, limits: Limits) -> str:
+def exceeded(evidence: Evidence, excess: Interval, limits: Limits, *, agreed: str, deflated: bool = False) -> str:
+    """`excess`: the interval that decided; `deflated`: memory had been allowed for in it."""
+    memory = ", once memory is allowed for" if deflated else ""
     return (
-        f"over {over(evidence)} the excess lies between {excess.low:.2f} and {excess.high:.2f}: "
-        f"neither surely above {limits.exceeded:.2f} nor surely below {limits.within:.2f}"
+        f"over {over(evidence)} the excess is at least {_two(excess.low)}{memory}, "
+        f"above the slack of {limits.exceeded:.2f}{agreed}"
     )
+
+
+def wide(evidence: Evidence, excess: Interval, limits: Limits, memory: Interval | None = None) -> str:
+    """Why an interval does not decide. `memory`: the excess that is left once memory is allowed for, if it was."""
+    between = f"over {over(evidence)} the excess lies between {_two(excess.low)} and {_two(excess.high)}"
+    if memory is not None:
+        between += f", or {_two(memory.low)} and {_two(memory.high)} once memory is allowed for"
+    if excess.low > limits.exceeded and memory is None:
+        return f"{between}, but has not risen far enough to be told from a single step among so few sizes"
+    return f"{between}: neither surely above {limits.exceeded:.2f} nor surely below {limits.within:.2f}"
 
 
 def too_few(ladder: Ladder, count: int, needed: int) -> str:

@@ -28,7 +28,7 @@ from pytest_growthbudget.fitting.counts import decide_counts
 from pytest_growthbudget.fitting.evidence import Evidence
 from pytest_growthbudget.fitting.excess import CLOCK_NOISE, FEWEST_SIZES
 from pytest_growthbudget.fitting.finding import conclude, shown_excess
-from pytest_growthbudget.fitting.judgement import Finding, VerdictName
+from pytest_growthbudget.fitting.judgement import Finding, Interval, VerdictName
 from pytest_growthbudget.fitting.run import Run
 from pytest_growthbudget.fitting.verdict import (
     OVERWHELMING,
@@ -236,15 +236,20 @@ class _Clock:
     def exceeded(self, window: Window, *, confirmed: bool) -> Finding:
         cut, _ = window
         evidence, limits = cut(self.judged()), self.run.limits
-        excess = shown_excess(evidence.plain, evidence.gamma, limits.confidence)
-        agreed = reasons.BY_SECOND_SET if confirmed else reasons.BY_CLIMB
-        return self.conclude(
-            "exceeded",
-            reasons.exceeded(evidence, excess, limits, agreed=agreed),
+        reason = reasons.exceeded(
             evidence,
-            confirmed=True if confirmed else None,
-            memory=True,
+            self.left_of(evidence) or shown_excess(evidence.plain, evidence.gamma, limits.confidence),
+            limits,
+            agreed=reasons.BY_SECOND_SET if confirmed else reasons.BY_CLIMB,
+            deflated=self.left_of(evidence) is not None,
         )
+        return self.conclude("exceeded", reason, evidence, confirmed=True if confirmed else None, memory=True)
+
+    def left_of(self, evidence: Evidence) -> Interval | None:
+        """The excess that is left once memory is allowed for; None where it was not."""
+        if not self.run.curve_consulted or evidence.deflated is None:
+            return None
+        return shown_excess(evidence.deflated, evidence.gamma, self.run.limits.confidence)
 
     def cut_short(self) -> Finding:
         """The verdict when time is over: of what there is, only what is beyond doubt counts."""
@@ -278,9 +283,11 @@ class _Clock:
         return self.conclude("unmeasured", reason)
 
     def why(self) -> str:
+        if self.doubt:
+            return self.doubt
         evidence, limits = self.judged(), self.run.limits
         excess = shown_excess(evidence.plain, evidence.gamma, limits.confidence)
-        return self.doubt or reasons.wide(evidence, excess, limits)
+        return reasons.wide(evidence, excess, limits, self.left_of(evidence))
 
     def conclude(
         self,

@@ -178,11 +178,14 @@ def trials(session: str) -> Iterator[Trial]:
 
 @dataclass
 class Replay:
-    """Answers requests from a recording. `plan(cost)`: readings a size, None for all that were recorded."""
+    """Answers requests from a recording. `plan(cost)`: readings a size, None for all that were recorded.
+
+    `climb_costs`: the ladder's costs are the smaller of two calls, not the lower quartile of the first set.
+    """
 
     trial: Trial
     plan: Callable[[float], int] | None = None
-    fixed_calls: bool = False
+    climb_costs: bool = False
     with_curve: bool = True
     nanoseconds: float = 0.0
     curve_asked: bool = False
@@ -191,7 +194,10 @@ class Replay:
 
     def __post_init__(self) -> None:
         recording = self.trial.recording
-        self.costs = [lower_quartile(read) for read in recording.sets[0]]
+        if self.climb_costs:
+            self.costs = [float(min(read[:2])) for read in recording.sets[1]]
+        else:
+            self.costs = [lower_quartile(read) for read in recording.sets[0]]
 
     def promise(self, **more: Any) -> Promise:
         return Promise(log_growth=GROWTHS[self.trial.budget], curve=self.curve, **more)
@@ -236,10 +242,8 @@ class Replay:
         costs = []
         for index in range(request.first, request.last):
             read = recording.sets[request.repeat][index]
-            if request.calls and self.fixed_calls:
-                read = read[: request.calls]
-            elif self.plan is not None:
-                read = read[: self.plan(self.costs[index])]
+            if self.plan is not None:
+                read = read[: request.calls or self.plan(self.costs[index])]
             costs.append(tuple(float(each) for each in read))
         self.nanoseconds += sum(map(sum, costs))
         return Series(sizes=recording.sizes[request.first : request.last], costs=tuple(costs))
