@@ -1,4 +1,4 @@
-"""`python -m pytest_growthbudget COMMAND …`: the commands, each in a module of its own that is imported when asked for."""
+"""`python -m pytest_growthbudget COMMAND …`: each command's module is imported when it is asked for."""
 
 from __future__ import annotations
 
@@ -12,8 +12,36 @@ Command = Callable[[Sequence[str], TextIO, TextIO], int]
 # name: (module, function, what it does). A command takes its arguments, standard output and standard error, and
 # returns the exit code: 0 fine, 1 exceeded, 2 the input is at fault.
 COMMANDS = {
-    "explain": ("pytest_growthbudget.bounds.terminal", "explain", "the growth of a bound or recurrence, derived"),
-    "compare": ("pytest_growthbudget.bounds.terminal", "compare_command", "which of two growths is the slower"),
+    "explain": (
+        "pytest_growthbudget.bounds.terminal",
+        "explain",
+        "the growth of a bound or recurrence, derived",
+    ),
+    "compare": (
+        "pytest_growthbudget.bounds.terminal",
+        "compare_command",
+        "which of two growths is the slower",
+    ),
+    "judge": (
+        "pytest_growthbudget.commands.judge",
+        "judge_command",
+        "costs measured elsewhere, against a bound",
+    ),
+    "trend": (
+        "pytest_growthbudget.commands.trend",
+        "trend_command",
+        "how growth and cost moved over the runs of records files",
+    ),
+    "accept": (
+        "pytest_growthbudget.commands.accept",
+        "accept_command",
+        "accept what records files say, for the ratchet to hold to",
+    ),
+    "page": (
+        "pytest_growthbudget.commands.page",
+        "page_command",
+        "draw the page of records files",
+    ),
 }
 
 

@@ -6,7 +6,6 @@ would have been green end with exit code 1.
 
 from __future__ import annotations
 
-import importlib.util
 from collections import Counter
 from pathlib import Path
 from typing import Any
@@ -15,11 +14,11 @@ import pytest
 
 from pytest_growthbudget.ratchet import accepted_of
 from pytest_growthbudget.reporting.environment import environment, run_facts
+from pytest_growthbudget.reporting.extra import missing_libraries
 from pytest_growthbudget.reporting.files import reason, replace_file
 from pytest_growthbudget.reporting.records import NotWritten, Record, RecordsFile, record_of
 from pytest_growthbudget.settings import Settings
 
-MISSING_EXTRA = 'the page needs {}, not installed here: pip install "pytest_growthbudget[page]"'
 SHOWN_FAULTS = 5
 
 
@@ -142,9 +141,3 @@ def workers(config: pytest.Config) -> int:
     if getattr(config.option, "dist", "no") == "no":
         return 0
     return len(getattr(config.option, "tx", None) or ())
-
-
-def missing_libraries() -> str:
-    """What the page cannot be drawn without, and how to install it; "" where all is there."""
-    missing = [name for name in ("jinja2", "matplotlib") if importlib.util.find_spec(name) is None]
-    return MISSING_EXTRA.format(" and ".join(missing)) if missing else ""

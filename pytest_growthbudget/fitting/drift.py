@@ -30,7 +30,8 @@ def exponent_over(
     pairs = [(size, cost) for size, cost in zip(sizes, costs, strict=True) if size > 0 and cost > 0]
     if len(pairs) < FEWEST_SIZES:
         return None
-    seen = observe([size for size, _ in pairs], [cost for _, cost in pairs], lambda n: 0.0)
+    read = np.array(pairs, dtype=float)
+    seen = observe(read[:, 0], read[:, 1], lambda n: 0.0)
     fit = fit_excess(seen, noise=COUNTER_NOISE if counted else CLOCK_NOISE)
     return (fit.at_top if flat else fit.delta).interval(confidence)
 

@@ -13,6 +13,7 @@ from pytest_growthbudget.fitting import reasons
 from pytest_growthbudget.fitting.evidence import Evidence, gather
 from pytest_growthbudget.fitting.excess import CLOCK_NOISE, FEWEST_SIZES
 from pytest_growthbudget.fitting.finding import conclude, shown_excess
+from pytest_growthbudget.fitting.forecast import allowed_cost
 from pytest_growthbudget.fitting.judgement import Finding, Judgement, VerdictName
 from pytest_growthbudget.fitting.verdict import Limits, given_limits, is_exceeded, is_within, rises_enough
 from pytest_growthbudget.measuring.readings import Promise, Series
@@ -80,6 +81,8 @@ def judge(
         slack=slack,
         confidence=confidence,
         notes=(NO_MEMORY,),
+        allowed=tuple(allowed_cost(evidence.seen, promise.log_growth, row.size) for row in finding.sizes),
+        variable=variable,
     )
 
 

@@ -27,7 +27,7 @@ Facts = dict[str, Any]
 
 def same_machine(one: Mapping[str, Any], other: Mapping[str, Any]) -> bool:
     """Whether two environments have the same kind of processor."""
-    return one["machine"] == other["machine"] and one["processor"] == other["processor"]
+    return bool(one["machine"] == other["machine"] and one["processor"] == other["processor"])
 
 
 def against(

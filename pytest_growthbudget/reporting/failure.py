@@ -203,9 +203,10 @@ def _closing(judgement: dict[str, Any]) -> str:
     if judgement["verdict"] == "exceeded":
         lines.append(_fact("look at", _hint(judgement)))
     lines.extend(_fact("note", note) for note in judgement["notes"])
-    lines.append(
-        _fact("repeat", f"--growth-seed {judgement['seed']} (measured in {units.seconds(judgement['seconds'])})")
-    )
+    if judgement["seconds"]:
+        lines.append(
+            _fact("repeat", f"--growth-seed {judgement['seed']} (measured in {units.seconds(judgement['seconds'])})")
+        )
     return "\n".join(lines)
 
 

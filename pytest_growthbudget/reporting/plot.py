@@ -29,7 +29,7 @@ _PAINT = {
     "--quiet": "#010107",
 }
 _SIZE = (4.5, 3.2)
-_STYLE = {"svg.fonttype": "none", "svg.hashsalt": "growth", "path.simplify": False, "font.size": 10}
+_STYLE: Any = {"svg.fonttype": "none", "svg.hashsalt": "growth", "path.simplify": False, "font.size": 10}
 _MARGIN = 0.12
 
 
@@ -42,7 +42,8 @@ def draw(curves: Curves, *, unit: str, variable: str, key: str, title: str, desc
         axes.set_xlabel(f"problem size {variable}", color=_PAINT["--ink"])
         _draw_curves(axes, curves)
         written = io.StringIO()
-        FigureCanvasSVG(figure).print_svg(written, metadata={"Date": None, "Creator": None})
+        canvas: Any = FigureCanvasSVG(figure)
+        canvas.print_svg(written, metadata={"Date": None, "Creator": None})
     return _inlined(written.getvalue(), key, title, description)
 
 

@@ -1,0 +1,1 @@
+"""Commands for a terminal that read files: judge, trend, accept, page."""
