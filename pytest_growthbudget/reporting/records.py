@@ -19,7 +19,7 @@ from typing import Any
 
 from pytest_growthbudget.fitting.judgement import Judgement
 from pytest_growthbudget.reporting import files
-from pytest_growthbudget.reporting.schema import record_check
+from pytest_growthbudget.reporting.schema import fault_of
 from pytest_growthbudget.reporting.wire import plain
 
 SCHEMA = 1
@@ -101,7 +101,7 @@ def parse_line(line: bytes) -> tuple[Record | None, str]:
         age = "newer" if version > SCHEMA else "older"
         mend = "; upgrade pytest_growthbudget to read it" if version > SCHEMA else ""
         return None, f"schema {version} is {age} than the schema {SCHEMA} that this version reads{mend}"
-    message = record_check()(record, "")
+    message = fault_of(record)
     if message:
         return None, f"not a record: {message}"
     record["judgement"] = {**_later_entries(), **record["judgement"]}
@@ -163,6 +163,9 @@ class RecordsFile:
             return
         try:
             if self._journal is None:
+                if self.path.exists() and not self.path.is_file():  # a device: its folder is no place for files
+                    self._trusted = False
+                    return
                 self._journal = os.open(self.journal, os.O_RDWR | os.O_CREAT | os.O_APPEND | files.BINARY, 0o666)
                 files.try_lock(self._journal)
             files.write(self._journal, line)

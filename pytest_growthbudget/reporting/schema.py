@@ -14,8 +14,10 @@ from functools import cache
 from importlib import resources
 from typing import Any
 
-#: Says what is wrong with a value at a path ("" is fine).
-Check = Callable[[Any, str], str]
+#: Where in a value a fault is, from the outside in, and what it is.
+Fault = tuple[str, str]
+#: The first fault of a value, None where it has none. Paths are put together only for a fault: most values have none.
+Check = Callable[[Any], "Fault | None"]
 
 _COMMENTS = {"$schema", "$defs", "title", "description"}
 _IS: dict[str, Callable[[Any], bool]] = {
@@ -37,10 +39,22 @@ def schema() -> dict[str, Any]:
 
 
 @cache
-def record_check() -> Check:
-    """The check of one record against the shipped schema."""
+def _record_check() -> Check:
     whole = schema()
     return compiled(whole, whole)
+
+
+def fault_of(record: Any) -> str:
+    """What is wrong with a record, by the shipped schema; "" where nothing is."""
+    return told(_record_check()(record))
+
+
+def told(fault: Fault | None) -> str:
+    """A fault as a sentence; "" for none."""
+    if fault is None:
+        return ""
+    path, message = fault
+    return f"{path.removeprefix('.') or 'the record'} {message}"
 
 
 def compiled(part: Mapping[str, Any], whole: Mapping[str, Any]) -> Check:
@@ -50,48 +64,49 @@ def compiled(part: Mapping[str, Any], whole: Mapping[str, Any]) -> Check:
         for name in part["$ref"].removeprefix("#/").split("/"):
             place = place[name]
         return compiled(place, whole)
-    checks: list[Check] = []
-    for word, value in part.items():
-        if word == "type":
-            checks.append(_type([value] if isinstance(value, str) else value))
-        elif word == "const":
-            checks.append(_enum([value]))
-        elif word == "enum":
-            checks.append(_enum(value))
-        elif word == "minimum":
-            checks.append(_minimum(value))
-        elif word == "pattern":
-            checks.append(_pattern(value))
-        elif word == "required":
-            checks.append(_required(value))
-        elif word == "properties":
-            checks.append(_properties({name: compiled(item, whole) for name, item in value.items()}))
-        elif word == "items":
-            checks.append(_items(compiled(value, whole)))
-        elif word == "anyOf":
-            checks.append(_any_of([compiled(item, whole) for item in value]))
-        elif word not in _COMMENTS:
-            raise ValueError(f"the schema uses {word!r}, which is not known here")
+    checks = [_word(word, value, whole) for word, value in part.items() if word not in _COMMENTS]
+    if len(checks) == 1:
+        return checks[0]
 
-    def check(value: Any, path: str) -> str:
+    def check(value: Any) -> Fault | None:
         for each in checks:
-            fault = each(value, path)
-            if fault:
+            fault = each(value)
+            if fault is not None:
                 return fault
-        return ""
+        return None
 
     return check
+
+
+def _word(word: str, value: Any, whole: Mapping[str, Any]) -> Check:
+    if word == "type":
+        return _type([value] if isinstance(value, str) else value)
+    if word in ("const", "enum"):
+        return _enum([value] if word == "const" else value)
+    if word == "minimum":
+        return _minimum(value)
+    if word == "pattern":
+        return _pattern(value)
+    if word == "required":
+        return _required(value)
+    if word == "properties":
+        return _properties({name: compiled(item, whole) for name, item in value.items()})
+    if word == "items":
+        return _items(compiled(value, whole))
+    if word == "anyOf":
+        return _any_of([compiled(item, whole) for item in value])
+    raise ValueError(f"the schema uses {word!r}, which is not known here")
 
 
 def _type(names: list[str]) -> Check:
     tests = [_IS[name] for name in names]
     expected = " or ".join(names)
 
-    def check(value: Any, path: str) -> str:
+    def check(value: Any) -> Fault | None:
         for test in tests:
             if test(value):
-                return ""
-        return f"{path or 'the record'} must be {expected}; got {_shown(value)}"
+                return None
+        return "", f"must be {expected}; got {_shown(value)}"
 
     return check
 
@@ -99,17 +114,21 @@ def _type(names: list[str]) -> Check:
 def _enum(values: list[Any]) -> Check:
     expected = " or ".join(json.dumps(value) for value in values)
 
-    def check(value: Any, path: str) -> str:
-        # 1 and True are one value to Python and two to JSON.
-        fine = any(value == known and isinstance(value, bool) == isinstance(known, bool) for known in values)
-        return "" if fine else f"{path} must be {expected}; got {_shown(value)}"
+    def check(value: Any) -> Fault | None:
+        for known in values:
+            # 1 and True are one value to Python and two to JSON.
+            if value == known and isinstance(value, bool) == isinstance(known, bool):
+                return None
+        return "", f"must be {expected}; got {_shown(value)}"
 
     return check
 
 
 def _minimum(low: float) -> Check:
-    def check(value: Any, path: str) -> str:
-        return f"{path} must be at least {low}; got {value}" if _IS["number"](value) and value < low else ""
+    def check(value: Any) -> Fault | None:
+        if (type(value) is float or type(value) is int) and value < low:
+            return "", f"must be at least {low}; got {value}"
+        return None
 
     return check
 
@@ -117,54 +136,60 @@ def _minimum(low: float) -> Check:
 def _pattern(text: str) -> Check:
     expression = re.compile(text.removesuffix("$") + r"\Z" if text.endswith("$") else text)
 
-    def check(value: Any, path: str) -> str:
-        fine = type(value) is not str or expression.search(value)
-        return "" if fine else f"{path} must look like {text}; got {_shown(value)}"
+    def check(value: Any) -> Fault | None:
+        if type(value) is not str or expression.search(value):
+            return None
+        return "", f"must look like {text}; got {_shown(value)}"
 
     return check
 
 
 def _required(names: list[str]) -> Check:
-    def check(value: Any, path: str) -> str:
+    def check(value: Any) -> Fault | None:
         if type(value) is dict:
             for name in names:
                 if name not in value:
-                    return f"{path + '.' if path else ''}{name} is missing"
-        return ""
+                    return f".{name}", "is missing"
+        return None
 
     return check
 
 
 def _properties(known: dict[str, Check]) -> Check:
-    def check(value: Any, path: str) -> str:
+    pairs = tuple(known.items())
+
+    def check(value: Any) -> Fault | None:
         if type(value) is dict:
-            stem = path + "." if path else ""
-            for name, each in known.items():
+            for name, each in pairs:
                 if name in value:
-                    fault = each(value[name], stem + name)
-                    if fault:
-                        return fault
-        return ""
+                    fault = each(value[name])
+                    if fault is not None:
+                        return f".{name}{fault[0]}", fault[1]
+        return None
 
     return check
 
 
 def _items(each: Check) -> Check:
-    def check(value: Any, path: str) -> str:
+    def check(value: Any) -> Fault | None:
         if type(value) is list:
             for index, item in enumerate(value):
-                fault = each(item, f"{path}[{index}]")
-                if fault:
-                    return fault
-        return ""
+                fault = each(item)
+                if fault is not None:
+                    return f"[{index}]{fault[0]}", fault[1]
+        return None
 
     return check
 
 
 def _any_of(choices: list[Check]) -> Check:
-    def check(value: Any, path: str) -> str:
-        faults = [each(value, path) for each in choices]
-        return "" if "" in faults else faults[-1]
+    def check(value: Any) -> Fault | None:
+        fault = None
+        for each in choices:
+            fault = each(value)
+            if fault is None:
+                return None
+        return fault
 
     return check
 
