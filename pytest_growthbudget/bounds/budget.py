@@ -11,7 +11,7 @@ from typing import Any, Literal
 from pytest_growthbudget.bounds import growth as g
 from pytest_growthbudget.bounds.derivation import Derivation, Unsolved
 from pytest_growthbudget.bounds.enclosure import to_float
-from pytest_growthbudget.bounds.exact import Undecidable, exp_number
+from pytest_growthbudget.bounds.exact import Undecidable, exp_number, is_large
 from pytest_growthbudget.bounds.growth import Factor, Growth, Relation
 from pytest_growthbudget.bounds.language import BoundError
 from pytest_growthbudget.bounds.printing import show_growth
@@ -151,7 +151,7 @@ def _check_range(growth: Growth) -> None:
     for m in growth.monomials:
         for _, f in m:
             sizes = [abs(to_float(x)) for x in f.parts()]
-            if sizes[1] > 690.0 or max(sizes) > 1e6:
+            if sizes[1] > 690.0 or max(sizes) > 1e6 or any(is_large(x, 450) for x in f.parts()):
                 raise OverflowError
 
 

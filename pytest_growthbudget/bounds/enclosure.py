@@ -139,7 +139,8 @@ def to_float(x: Number) -> float:
         except OverflowError:
             return math.inf if x > 0 else -math.inf
     low, high = enclose(x, 25)
-    return float((low + high) / 2)
+    near, far = float(low), float(high)
+    return near if near == far else near + (far - near) / 2
 
 
 _UNKNOWN = ("base", "some")

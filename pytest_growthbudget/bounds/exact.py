@@ -70,6 +70,9 @@ class Real:
             self._hash = hash((frozenset(self.num.items()), frozenset(self.den.items())))
         return self._hash
 
+    def __reduce__(self) -> tuple[type[Real], tuple[Poly, Poly]]:
+        return Real, (self.num, self.den)
+
     def __repr__(self) -> str:
         return f"Real({self.num!r}, {self.den!r})"
 
@@ -230,7 +233,9 @@ def factor(n: int) -> tuple[tuple[int, int], ...]:
 
 def perfect_power(n: int) -> tuple[int, int]:
     """(r, k) with r**k == n and k as large as can be."""
-    for k in range(n.bit_length() - 1, 1, -1):
+    # Small primes are divided out before, so a root has ten bits at least; small n are rare and cheap.
+    most = n.bit_length() if n < 10**6 else n.bit_length() // 9
+    for k in range(most, 1, -1):
         r = integer_root(n, k)
         if r > 1 and r**k == n:
             return r, k
@@ -343,6 +348,13 @@ def power_number(x: Number, exponent: Number) -> Number:
             out = out * symbol(sym, e * exponent)
         return out
     return exp_number(exponent * ln_number(x))
+
+
+def is_large(x: Number, bits: int) -> bool:
+    """Whether some integer in x is longer than so many bits."""
+    if isinstance(x, Real):
+        return any(is_large(c, bits) for poly in (x.num, x.den) for c in poly.values())
+    return x.numerator.bit_length() > bits or x.denominator.bit_length() > bits
 
 
 def common_measure(weights: Iterable[Fraction]) -> Fraction:

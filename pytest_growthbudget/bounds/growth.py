@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from fractions import Fraction
 from typing import Literal
 
@@ -23,6 +23,17 @@ class Factor:
     power: Number = ZERO
     log: Number = ZERO
     loglog: Number = ZERO
+    _hash: int = field(default=0, init=False, repr=False, compare=False)
+
+    def __hash__(self) -> int:
+        # Hashing a Fraction takes a modular inverse; monomials are hashed often.
+        if not self._hash:
+            object.__setattr__(self, "_hash", hash(self.parts()) or 1)
+        return self._hash
+
+    def __reduce__(self) -> tuple[type[Factor], tuple[Number, ...]]:
+        # The hash kept above is this process's own.
+        return Factor, self.parts()
 
     def parts(self) -> tuple[Number, Number, Number, Number, Number]:
         """From the part that decides first to the one that decides last."""
@@ -48,20 +59,25 @@ class Factor:
 
     def log_value(self, n: float) -> float:
         """The natural logarithm of the factor at size n ≥ 1; logs are held at 1 where they would be smaller."""
-        n = max(n, 1.0)
+        n = max(n, 1)
+        log_n = math.log(n)
+        if log_n > 700.0 and (self.factorial or self.rate or math.isinf(log_n)):
+            return math.inf * self.sign() if self.sign() else 0.0
         factorial, rate, power, log, loglog = (to_float(x) for x in self.parts())
-        total = rate * n if rate else 0.0
+        total = power * log_n
+        if rate:
+            total += rate * n
         if factorial:
-            total += factorial * (math.lgamma(n + 1.0) if n < 1e15 else n * (math.log(n) - 1.0))
-        if power:
-            total += power * math.log(n)
+            total += factorial * (math.lgamma(n + 1.0) if n < 1e15 else n * (log_n - 1.0))
+        log_2 = max(log_n / _LN2, 1.0)
         if log:
-            total += log * math.log(math.log2(max(n, 2.0)))
+            total += log * math.log(log_2)
         if loglog:
-            total += loglog * math.log(math.log2(math.log2(max(n, 4.0))))
+            total += loglog * math.log(max(math.log2(log_2), 1.0))
         return total
 
 
+_LN2 = math.log(2.0)
 CONSTANT = Factor()
 Monomial = tuple[tuple[str, Factor], ...]
 
@@ -145,22 +161,15 @@ class Growth:
     def log_value(self, sizes: Mapping[str, float]) -> float:
         """The natural logarithm of the sum at these sizes, without overflow. Sizes below 1 count as 1."""
         if len(self.monomials) == 1:
-            return sum(f.log_value(_size(sizes[name])) for name, f in self.monomials[0])
+            return sum(f.log_value(sizes[name]) for name, f in self.monomials[0])
         values = [
-            math.log(w) + sum(f.log_value(_size(sizes[name])) for name, f in m)
+            math.log(w) + sum(f.log_value(sizes[name]) for name, f in m)
             for m, w in zip(self.monomials, self.weights, strict=True)
         ]
         top = max(values)
         if not math.isfinite(top):
             return top
         return top + math.log(sum(math.exp(v - top) for v in values))
-
-
-def _size(n: float) -> float:
-    try:
-        return float(n)
-    except OverflowError:
-        return math.inf
 
 
 def dominant(terms: Iterable[tuple[Monomial, float]]) -> Growth:

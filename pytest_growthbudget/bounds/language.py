@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from fractions import Fraction
 
 MAX_LENGTH = 1000
-_MAX_DIGITS = 60
+_MAX_DIGITS = 150
 _WIDTH = 72
 
 

@@ -255,10 +255,18 @@ def show_monomial(m: Monomial) -> str:
     # The powers of the single variables come before their logarithms, which take their argument without brackets.
     top.sort(key=lambda t: t.startswith(("log", "(log")))
     bottom.sort(key=lambda t: t.startswith(("log", "(log")))
-    head = " ".join(top) or "1"
+    head = _joined(top) or "1"
     if not bottom:
         return head
-    return f"{head} / {bottom[0]}" if len(bottom) == 1 else f"{head} / ({' '.join(bottom)})"
+    return f"{head} / {bottom[0]}" if len(bottom) == 1 else f"{head} / ({_joined(bottom)})"
+
+
+def _joined(parts: list[str]) -> str:
+    """The product; a sign stands before brackets, which could be an argument otherwise."""
+    out = ""
+    for part in parts:
+        out += (" * " if part.startswith("(") else " ") + part if out else part
+    return out
 
 
 def show_growth(growth: Growth) -> str:

@@ -223,15 +223,18 @@ def _main(text: str, left: _LeftSide, piece: list[Token], bases: list[tuple[_Lef
 def _merged(meaning: Meaning, calls: list[tuple[Value, Call]], variable: str) -> tuple[Term, ...]:
     """One term for each argument, each coefficient checked before they are added."""
     found: dict[Argument, tuple[Value, Call]] = {}
+    terms: dict[Argument, Term] = {}
     for coefficient, call in calls:
-        argument = read_term(meaning, coefficient, call, variable).argument
+        term = read_term(meaning, coefficient, call, variable)
+        argument = term.argument
         if argument in found:
             coefficient = v.add([(1, found[argument][0]), (1, coefficient)])
+            term = read_term(meaning, coefficient, call, variable)
         found[argument] = (coefficient, call)
-    if len(found) > MAX_CALLS:
-        call = calls[MAX_CALLS][1]
-        meaning.fail(f"more than {MAX_CALLS} different calls are not solved", call)
-    return tuple(read_term(meaning, c, call, variable) for c, call in found.values())
+        terms[argument] = term
+        if len(terms) > MAX_CALLS:
+            meaning.fail(f"more than {MAX_CALLS} different calls are not solved", call)
+    return tuple(terms.values())
 
 
 def _is_silent(zeros: list[bool], terms: tuple[Term, ...]) -> bool:

@@ -203,7 +203,7 @@ def power(base: Value, exponent: Number) -> Value:
             raise Outside("a power of something that is not positive")
         return Value({raised(m, exponent): _power_of(c, exponent)})
     whole = isinstance(exponent, Fraction) and exponent.denominator == 1 and 0 < exponent <= 8
-    if whole and (len(base.terms) + len(base.errors)) ** min(int(exponent), 4) <= MAX_TERMS:  # type: ignore[arg-type]
+    if whole and (len(base.terms) + len(base.errors)) ** min(int(exponent), 4) <= 27:  # type: ignore[arg-type]
         out = base
         for _ in range(int(exponent) - 1):  # type: ignore[arg-type]
             out = times(out, base)
@@ -218,7 +218,8 @@ def power(base: Value, exponent: Number) -> Value:
     rest = relative_rest(base, lead, coefficient)
     head = Value({raised(lead, exponent): _power_of(coefficient, exponent)})
     series = add([(1, number(ONE)), (1, times(number(exponent), rest))])
-    squares = [multiply(a, b) for a in (*rest.terms, *rest.errors) for b in (*rest.terms, *rest.errors)]
+    tops = _maximal([*rest.terms, *rest.errors])
+    squares = [multiply(a, b) for a in tops for b in tops]
     return times(head, _limited(dict(series.terms), [*series.errors, *_maximal(squares)]))
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import pickle
+import sys
 from pathlib import Path
 from typing import Any
 
@@ -93,8 +94,6 @@ HOSTILE = [
 @pytest.mark.parametrize("text", HOSTILE, ids=range(len(HOSTILE)))
 def test_hostile_text_is_answered(text: str) -> None:
     """An answer or the package's own error; work is bounded by counts, checked here by steps of the interpreter."""
-    import sys
-
     calls = 0
 
     def count(frame: Any, event: str, arg: object) -> None:
@@ -109,7 +108,7 @@ def test_hostile_text_is_answered(text: str) -> None:
         assert str(fault)
     finally:
         sys.setprofile(before)
-    assert calls < 60_000
+    assert calls < 120_000
 
 
 def test_incomparable_growths_are_refused() -> None:
