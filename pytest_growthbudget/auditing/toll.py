@@ -1,0 +1,142 @@
+"""The toll: how the own work of a call grows with its size.
+
+Own work is averaged by size and fitted like the costs of a budget (`fitting.excess`): a power of n behind a constant,
+with an interval that allows for what drifts from size to size. Against a declared toll the excess is fitted.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from typing import Final
+
+import numpy as np
+
+from pytest_growthbudget.auditing.calls import Calls, Floats
+from pytest_growthbudget.auditing.pattern import octaves, roles
+from pytest_growthbudget.fitting.excess import CLOCK_NOISE, COUNTER_NOISE, FEWEST_SIZES, fit_excess, observe
+from pytest_growthbudget.fitting.forecast import SIMPLE_GROWTHS
+from pytest_growthbudget.fitting.judgement import Interval
+
+LogGrowth = Callable[[float], float]
+
+_MATERIAL: Final = 2.0
+_HIDDEN: Final = 0.2
+_TOP_SIZES: Final = 6
+_WHOLE_POWERS: Final = ("1", "n", "n^2", "n^3", "n^4")
+
+
+@dataclass(frozen=True, slots=True, kw_only=True, eq=False)
+class Work:
+    """Own work by size; arrays of shape (k,), ascending. `unit` is "steps" or "ns"; `noise` that of its logarithm."""
+
+    sizes: Floats
+    work: Floats
+    counts: Floats
+    unit: str
+    noise: float
+
+    def __len__(self) -> int:
+        return len(self.sizes)
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Toll:
+    """How own work grows: the exponent of n with its interval, and the nearest simple growth as text.
+
+    `hidden`: whether this is the growth of time where steps show less. `from_size`: the least size fitted.
+    """
+
+    exponent: Interval
+    nearest: str
+    unit: str
+    hidden: bool = False
+    from_size: float = 0.0
+
+
+def work_by_size(calls: Calls, unit: str) -> Work:
+    """Own work of the dividing calls by size: the mean of steps, the lower quartile of nanoseconds.
+
+    Where no call divides, that of all calls.
+    """
+    role = roles(calls)
+    chosen = role.dividing if role.dividing.any() else calls.whole
+    chosen = chosen & (calls.size > 0)
+    size, own = calls.size[chosen], calls.own[chosen].astype(float)
+    where = octaves(size)
+    sizes, work, counts = [], [], []
+    for one in np.unique(where):
+        inside = where == one
+        values = own[inside]
+        sizes.append(float(size[inside].mean()))
+        work.append(float(values.mean() if unit == "steps" else np.quantile(values, 0.25)))
+        counts.append(float(inside.sum()))
+    kept = np.array(work) > 0
+    return Work(
+        sizes=np.array(sizes)[kept],
+        work=np.array(work)[kept],
+        counts=np.array(counts)[kept],
+        unit=unit,
+        noise=COUNTER_NOISE if unit == "steps" else CLOCK_NOISE,
+    )
+
+
+def toll_of(work: Work, confidence: float = 0.95) -> Toll | None:
+    """The growth of own work; None where there are too few sizes to tell."""
+    excess = excess_over(work, lambda n: 0.0, confidence)
+    if excess is None:
+        return None
+    return Toll(exponent=excess, nearest=_nearest(work), unit=work.unit, from_size=float(work.sizes[0]))
+
+
+def hidden_toll(steps: Work, time: Work, confidence: float = 0.95) -> tuple[Toll, Work] | None:
+    """The growth of time at the largest sizes, with these, where time a step clearly grows; None where it does not.
+
+    Work inside C functions (slices, `in`, `pop(0)`, arrays) is part of a step, whatever it takes. Time a step also
+    grows a little where calls are rare or leave the caches, so it must at least double and go on growing at the top.
+    """
+    if len(steps) < FEWEST_SIZES or len(time) < FEWEST_SIZES:
+        return None
+    known, told = np.log(steps.sizes), np.log(steps.work)
+
+    def log_steps(n: float) -> float:
+        return float(np.interp(math.log(n), known, told))
+
+    rate = time.work / np.exp([log_steps(n) for n in time.sizes])
+    if rate[-1] < _MATERIAL * rate.min():
+        return None
+    top = _top(time)
+    excess = excess_over(top, log_steps, confidence)
+    found = toll_of(top, confidence)
+    if excess is None or found is None or excess.low < _HIDDEN:
+        return None
+    return replace(found, hidden=True), top
+
+
+def _top(work: Work) -> Work:
+    """The largest sizes: four octaves of them, but enough to fit."""
+    count = max(int((work.sizes >= work.sizes[-1] / 16).sum()), _TOP_SIZES)
+    return replace(work, sizes=work.sizes[-count:], work=work.work[-count:], counts=work.counts[-count:])
+
+
+def excess_over(work: Work, log_growth: LogGrowth, confidence: float = 0.95) -> Interval | None:
+    """The excess of own work over a declared toll; None where there are too few sizes to tell."""
+    if len(work) < FEWEST_SIZES or work.sizes[-1] < 2 * work.sizes[0]:
+        return None
+    return fit_excess(observe(work.sizes, work.work, log_growth), noise=work.noise).delta.interval(confidence)
+
+
+def _nearest(work: Work) -> str:
+    """The simple growth nearest to own work: a whole power where one is consistent with it, else any."""
+    fits: list[tuple[bool, float, str]] = []
+    for name, log_growth in SIMPLE_GROWTHS:
+        excess = excess_over(work, _from_two(log_growth))
+        assert excess is not None
+        whole = name in _WHOLE_POWERS and excess.low <= 0 <= excess.high
+        fits.append((not whole, abs(excess.estimate) + (0.05 if "log" in name else 0.0), name))
+    return min(fits)[2]
+
+
+def _from_two(log_growth: LogGrowth) -> LogGrowth:
+    return lambda n: log_growth(max(n, 2.0))
