@@ -132,8 +132,8 @@ def _regularity(pairs: list[tuple[Number, Number]], power: Number) -> str:
 def _check_minor(rec: Recurrence, minor: list[Term], p: Number, relation: int, steps: list[str]) -> None:
     """Terms that add less than a power of n: c(n) = n^γ…, argument n^θ…, with γ + θe < e.
 
-    Here e is the larger of p and the toll's exponent. From T = O(n^E) for some E (which holds for large E as γ + θE < E), the minor terms are tolls of exponent
-    γ + θE; repeating lowers E to just above e, where these tolls are polynomially below n^e and change nothing.
+    Here e is the larger of p and the toll's exponent. T = O(n^E) holds for some large E, as γ + θE < E there. Then
+    the minor terms are tolls of exponent γ + θE; repeating lowers E to just above e, where these tolls are polynomially below n^e and change nothing.
     A coefficient that merely tends to 0 is enough where the toll dominates (its regularity is strict).
     """
     e = rec.toll.power if relation > 0 and rec.toll is not None else p
@@ -178,7 +178,7 @@ def _only_toll(rec: Recurrence) -> Derivation:
 
 
 def _name(main: list[Term], relation: int, toll: Factor | None) -> str:
-    if len(main) > 1:
+    if len(main) > 1 or compare_numbers(main[0].coefficient, ONE) < 0:
         return "Akra-Bazzi theorem"
     if toll is None or relation < 0:
         return "Master theorem, case 1"

@@ -330,6 +330,9 @@ class Parser:
             if token.kind == "+":
                 return inner
             return Sum(((-1, inner),), token.start, inner.end, inner.recursive)
+        if token.kind == "{" and self.tokens[self.at + 2].kind != ":":
+            node, closed = self.bracket("}")
+            return Sum(((1, node),), token.start, closed.end, node.recursive)
         node = self.primary()
         if isinstance(node, Name) and self.token.kind == "(" and self.token.start == node.end:
             self.fail("it is not clear where the exponent ends", node.start, self.token.end, "write brackets or *")

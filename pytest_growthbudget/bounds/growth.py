@@ -173,7 +173,7 @@ class Growth:
 
 
 def dominant(terms: Iterable[tuple[Monomial, float]]) -> Growth:
-    """The sum without the monomials that another one, or two others together, bound."""
+    """The sum without the monomials that another one bounds."""
     kept: list[tuple[Monomial, float]] = []
     for m, w in terms:
         if any(compare_monomials(m, k) == -1 for k, _ in kept):
@@ -184,20 +184,7 @@ def dominant(terms: Iterable[tuple[Monomial, float]]) -> Growth:
             continue
         kept = [(k, v) for k, v in kept if compare_monomials(k, m) != -1]
         kept.append((m, w))
-    if 2 < len(kept) <= 8:
-        kept = _without_means(kept)
     return Growth(tuple(m for m, _ in kept), tuple(w for _, w in kept))
-
-
-def _without_means(kept: list[tuple[Monomial, float]]) -> list[tuple[Monomial, float]]:
-    i = 0
-    while i < len(kept):
-        others = [m for j, (m, _) in enumerate(kept) if j != i]
-        if _below_a_mean(kept[i][0], others):
-            kept = kept[:i] + kept[i + 1 :]
-        else:
-            i += 1
-    return kept
 
 
 def _below_a_mean(m: Monomial, others: list[Monomial]) -> bool:

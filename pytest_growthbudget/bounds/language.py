@@ -74,10 +74,11 @@ _SIGNS = {
     ":": ":", "√": "sqrt", "⌈": "⌈", "⌉": "⌉", "⌊": "⌊", "⌋": "⌋", "|": "|",
 }  # fmt: skip
 _SUPERSCRIPTS = dict(zip("⁰¹²³⁴⁵⁶⁷⁸⁹⁻ⁿ", "0123456789-n", strict=True))
+_SUBSCRIPTS = str.maketrans("₀₁₂₃₄₅₆₇₈₉", "0123456789")
 _TOKEN = re.compile(
     r"(?P<space>[ \t\r\u00a0\u2009]+)"
     r"|(?P<number>(?:[0-9]+(?:\.[0-9]+)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?)"
-    r"|(?P<name>[A-Za-z][A-Za-z0-9_]*)"
+    r"|(?P<name>[A-Za-z][A-Za-z0-9_₀-₉]*)"
     r"|(?P<power>[⁰¹²³⁴⁵⁶⁷⁸⁹⁻ⁿ]+)"
     r"|(?P<theta>[Θθ])"
     r"|(?P<sign>\*\*|//|:=|==|<=|>=|[\^*·×⋅∙/÷+\-−–(){}!,;\n=≤≥<>:√⌈⌉⌊⌋|])"
@@ -107,7 +108,7 @@ def tokenize(text: str) -> list[Token]:
             _check_number(text, value, at, end)
             tokens.append(Token("number", value, at, end))
         elif kind == "name":
-            tokens.append(Token("name", value, at, end))
+            tokens.append(Token("name", value.translate(_SUBSCRIPTS), at, end))
         elif kind == "theta":
             tokens.append(Token("name", "Theta", at, end))
         elif kind == "power":

@@ -36,44 +36,14 @@ _REFUSED = {
     "poly": "poly names no power",
 }
 _ALWAYS = ("nan", "inf", "infinity", "omega", "mod")
-_WORDS = frozenset(
-    [
-        "for",
-        "if",
-        "with",
-        "where",
-        "and",
-        "or",
-        "not",
-        "in",
-        "is",
-        "when",
-        "else",
-        "then",
-        "lambda",
-        "import",
-        "from",
-        "while",
-        "def",
-        "class",
-        "return",
-        "yield",
-        "del",
-        "pass",
-        "try",
-        "raise",
-        "exec",
-        "eval",
-        "open",
-        "print",
-        "true",
-        "false",
-        "none",
-        "async",
-        "await",
-        "global",
-    ]
+_PROSE = (
+    "for if with where and or not in is when else then lambda import from while def class return yield del pass "
+    "try raise exec eval open print true false none async await global "
+    "time space memory steps operations comparisons amortized amortised expected average worst best case per of the "
+    "choose over times plus minus div divided squared cubed square cube root power to by factorial "
+    "constant linear linearithmic quadratic cubic logarithmic exponential polynomial"
 )
+_WORDS = frozenset(_PROSE.split())
 
 
 def function(name: str) -> str:
@@ -100,8 +70,14 @@ def refuse_function(text: str, token: Token, bracketed: bool) -> None:
         if bracketed or lowered in _ALWAYS or name == "Omega":
             hint = "write O(…), Θ(…) or the bare expression" if "bound" in reason else ""
             raise BoundError(reason, text, token.start, token.end, hint)
-    if lowered in _WORDS:
-        raise BoundError(f"{name!r} is a word of prose or code, not a size", text, token.start, token.end)
+    if lowered in _WORDS and not (bracketed and lowered in _PLAIN):
+        raise BoundError(
+            f"{name!r} is a word of prose or code, not a size",
+            text,
+            token.start,
+            token.end,
+            "write the bound alone, as in n log n; a size needs another name",
+        )
 
 
 def checked_size(text: str, token: Token, others: set[str]) -> str:

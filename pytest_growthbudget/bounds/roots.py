@@ -159,11 +159,11 @@ def _enclose_root(equation: Equation, digits: int) -> Interval:
     for _ in range(max(1, (digits + 15).bit_length() - 3)):
         value, slope = Decimal(-1), Decimal(0)
         for a_dec, w_dec in parts:
-            part = work.multiply(a_dec, work.exp(work.multiply(-w_dec, x)))
+            part = work.multiply(a_dec, work.exp(work.multiply(w_dec.copy_negate(), x)))
             value = work.add(value, part)
             slope = work.subtract(slope, work.multiply(w_dec, part))
         x = work.subtract(x, work.divide(value, slope))
-    margin = work.scaleb(work.add(abs(x), Decimal(1).scaleb(-30)), Decimal(3 - digits))
+    margin = work.scaleb(work.add(x.copy_abs(), Decimal(1).scaleb(-30)), Decimal(3 - digits))
     for _ in range(digits):
         low, high = work.subtract(x, margin), work.add(x, margin)
         left = equation.sum_at((low, low), digits + 10)

@@ -105,9 +105,12 @@ def test_hostile_text_is_answered(text: str) -> None:
     try:
         parse_budget(text)
     except BoundError as fault:
-        assert str(fault)
+        message = str(fault)
+    else:
+        message = "answered"
     finally:
         sys.setprofile(before)
+    assert message
     assert calls < 120_000
 
 

@@ -1,9 +1,9 @@
 """The valid recurrences: the growth expected, and an exact evaluation of T that no theorem enters, against it.
 
 An entry's `python` is its right side as a Python expression of our own data; T is unrolled by it with T = 1 at small
-sizes. For "ratio" n is real; for "step" n runs over the integers, in arbitrary precision; for "root" the expression is in m = log2 n,
-and for "root-scaled" it gives T(n)/n. If the claim is right, D = log T - log growth
-settles: its slope against log n, log log n and log log log n tends to 0, while a wrong exponent shows as its error.
+sizes. For "ratio" n is real; for "step" n runs over the integers, in arbitrary precision; for "root" the expression
+is in m = log2 n, and for "root-scaled" it gives T(n)/n. If the claim is right, D = log T - log growth settles: its
+slope against log n, log log n and log log log n tends to 0, while a wrong exponent shows as its error.
 """
 
 from __future__ import annotations
@@ -46,7 +46,7 @@ def _unrolled(code: Any, variable: str, base: float) -> Callable[[float], float]
             try:
                 memo[round(math.log(stack[-1]), 10)] = eval(code, {**names, variable: stack[-1]})
                 stack.pop()
-            except _Missing as missing:
+            except _Missing as missing:  # noqa: PERF203 - the exception is the call
                 stack.append(missing.args[0])
         return memo[round(math.log(x), 10)]
 
@@ -148,9 +148,7 @@ def test_growth_is_the_expected_one(entry: dict[str, Any]) -> None:
     assert parse_budget(budget.theta).growth.monomials == budget.growth.monomials
 
 
-@pytest.mark.parametrize(
-    "entry", [e for e in ENTRIES if not e.get("near_critical")], ids=lambda e: e["input"]
-)
+@pytest.mark.parametrize("entry", [e for e in ENTRIES if not e.get("near_critical")], ids=lambda e: e["input"])
 def test_unrolled_values_settle_on_the_growth(entry: dict[str, Any]) -> None:
     """T itself, unrolled, stays within a factor of the growth; a wrong log n shows as a slope of 1 against log log n.
 

@@ -19,7 +19,23 @@ from pytest_growthbudget.bounds.language import BoundError
 
 CORPORA = Path(__file__).parent.parent / "bounds"
 SIGNS = list("nmVETk0123456789.+-*/^!()[]{},;:=<>|√⌈⌉⌊⌋²³ⁿ·×ΘOo \t_%&'\"\\∞Ωпeπ")
-WORDS = ["log ", "log2(", "ln ", "lg ", "sqrt(", "T(n/2)", "T(n-1)", "T(", " = ", "O(", "max(", "exp(", "n!", "^2", "2^n"]
+WORDS = [
+    "log ",
+    "log2(",
+    "ln ",
+    "lg ",
+    "sqrt(",
+    "T(n/2)",
+    "T(n-1)",
+    "T(",
+    " = ",
+    "O(",
+    "max(",
+    "exp(",
+    "n!",
+    "^2",
+    "2^n",
+]
 LIMIT = 0.05
 
 
@@ -59,7 +75,18 @@ def expression(r: random.Random, depth: int = 0, names: str = "n") -> str:
 
 
 def argument(r: random.Random) -> str:
-    shapes = ["n/{}", "n - {}", "{}n", "2n/{}", "sqrt(n)", "n^(1/{})", "ceil(n/{})", "floor({}n)", "n/{} + 3", "n - log n"]
+    shapes = [
+        "n/{}",
+        "n - {}",
+        "{}n",
+        "2n/{}",
+        "sqrt(n)",
+        "n^(1/{})",
+        "ceil(n/{})",
+        "floor({}n)",
+        "n/{} + 3",
+        "n - log n",
+    ]
     return r.choice([*shapes, "n/2", "n/2", "n-1", "n-2"]).format(number(r))
 
 
