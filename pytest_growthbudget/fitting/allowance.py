@@ -22,7 +22,7 @@ BYTES_PER_ELEMENT: Final = 64.0
 EXTRA_FACTOR: Final = 2.0
 GREATEST_FACTOR: Final = 12.0
 _FOOTPRINT_EXPONENTS: Final = (1.0, 3.0)
-_MOST_VISITS: Final = 300.0  # in logs; only keeps the growth of an exponential budget inside a float
+_UTMOST: Final = 300.0  # in logs; only keeps the growth of an exponential budget inside a float
 
 
 def allowance(curve: MemoryCurve, seen: Observations, footprints: Array) -> Array:
@@ -40,7 +40,8 @@ def budgeted_footprints(seen: Observations, footprints: Array) -> Array:
 
     Such a body cannot touch memory that grows faster than its own budget, nor be denied memory linear in n.
     """
-    grown = np.exp(np.maximum(seen.log_growth - seen.log_growth[0], np.log(seen.sizes / seen.sizes[0])))
+    growth = np.minimum(seen.log_growth - seen.log_growth[0], _UTMOST)
+    grown = np.exp(np.maximum(growth, np.log(seen.sizes / seen.sizes[0])))
     budgeted: Array = np.minimum(footprints, max(footprints[0], SMALL_FOOTPRINT) * grown)
     return budgeted
 
@@ -57,7 +58,7 @@ def addition(curve: MemoryCurve, seen: Observations, footprints: Array, touched:
     """
     extra_each = np.interp(np.log(np.maximum(touched, 1.0)), curve.log_bytes, curve.extra)
     exponent = _footprint_exponent(seen.sizes, footprints)
-    visits = np.exp(np.clip(seen.log_growth - exponent * np.log(seen.sizes), 0.0, _MOST_VISITS))
+    visits = np.exp(np.clip(seen.log_growth - exponent * np.log(seen.sizes), 0.0, _UTMOST))
     elements = np.maximum(seen.sizes, touched_elements(footprints))
     share = EXTRA_FACTOR * extra_each * elements * visits / seen.costs
     return np.maximum.accumulate(-np.log(np.maximum(1 - share, 1 / GREATEST_FACTOR)))

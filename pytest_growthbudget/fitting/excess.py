@@ -18,6 +18,7 @@ the variance with one degree of freedom, hence m − 1 degrees of freedom from m
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from functools import lru_cache
@@ -39,6 +40,8 @@ WALK_SHARES: Final = np.array((0.0, 0.1, 0.3, 1.0, 3.0, 10.0, 100.0))
 _OFFSETS: Final = 1 - np.geomspace(0.95, 0.004, 23)
 _PRIOR_OF_NO_OFFSET: Final = 0.5
 _NEGLIGIBLE: Final = 1e-4
+_SMALL_STEP: Final = 1e-8
+_MOST_STEPS: Final = 200
 _GAMMA_STEP: Final = 1.05
 
 
@@ -118,19 +121,31 @@ class Mixture:
         return float(self.weights @ stdtr(self.freedom, (value - self.centres) / self.scales))
 
     def quantiles(self, levels: Sequence[float]) -> tuple[float, ...]:
-        """The values below which the given shares of the probability lie, by bisection."""
-        wanted = np.asarray(levels, dtype=float)[:, None]
+        """The values below which the given shares of the probability lie, by Newton's method between bounds."""
+        wanted = np.asarray(levels, dtype=float)
         # A quantile of a mixture lies between the least and the greatest quantile of its parts.
-        parts = self.centres + self.scales * stdtrit(self.freedom, wanted)
+        parts = self.centres + self.scales * stdtrit(self.freedom, wanted[:, None])
         low, high = parts.min(axis=1), parts.max(axis=1)
-        while np.any(high - low > 1e-9 + 1e-9 * np.abs(high)):
-            middle = (low + high) / 2
-            shares = stdtr(self.freedom, (middle[:, None] - self.centres) / self.scales) @ self.weights
-            below = shares < wanted[:, 0]
-            low, high = np.where(below, middle, low), np.where(below, high, middle)
-            if np.all((middle == low) | (middle == high)) and np.all(high - low < 1e-6):
+        at = (low + high) / 2
+        for _ in range(_MOST_STEPS):
+            away = (at[:, None] - self.centres) / self.scales
+            surplus = stdtr(self.freedom, away) @ self.weights - wanted
+            low, high = np.where(surplus < 0, at, low), np.where(surplus < 0, high, at)
+            step = surplus / np.maximum(self._density(away), 1e-300)
+            following = at - step
+            outside = (following <= low) | (following >= high)
+            following = np.where(outside, (low + high) / 2, following)
+            moved, at = np.abs(following - at).max(), following
+            if moved < _SMALL_STEP:
                 break
-        return tuple(((low + high) / 2).tolist())
+        return tuple(at.tolist())
+
+    def _density(self, away: Array) -> Array:
+        half = (self.freedom + 1) / 2
+        log_peak = math.lgamma(half) - math.lgamma(self.freedom / 2) - 0.5 * math.log(self.freedom * math.pi)
+        each = math.exp(log_peak) * (1 + away * away / self.freedom) ** -half
+        density: Array = each @ (self.weights / self.scales)
+        return density
 
     def interval(self, confidence: float = 0.95) -> Interval:
         """The median with the central interval that holds `confidence` of the probability."""
@@ -166,14 +181,14 @@ def fit_excess(seen: Observations, *, noise: float = CLOCK_NOISE) -> Excess:
     share = lines.left[:, -1:] / seen.costs[-1]
     hidden_share = np.where(lines.kind == 2, share[:, 0], 1.0)[:, None]
     return Excess(
-        delta=_mixture(lines.slope[plain], lines.error[plain], weights[plain], lines.freedom),
-        at_top=_mixture(
+        delta=pruned(lines.slope[plain], lines.error[plain], weights[plain], lines.freedom),
+        at_top=pruned(
             (share * (gamma + lines.slope) - gamma)[plain],
             (share * lines.error)[plain],
             weights[plain],
             lines.freedom,
         ),
-        hidden=_mixture(hidden_share * lines.slope, hidden_share * lines.error, hidden_weights, lines.freedom),
+        hidden=pruned(hidden_share * lines.slope, hidden_share * lines.error, hidden_weights, lines.freedom),
         count=len(seen),
     )
 
@@ -280,7 +295,8 @@ def _normalised(log_weights: Array) -> Array:
     return weights
 
 
-def _mixture(centres: Array, scales: Array, weights: Array, freedom: int) -> Mixture:
+def pruned(centres: Array, scales: Array, weights: Array, freedom: int) -> Mixture:
+    """The mixture without its negligible parts; weights of any shape, summing to one."""
     keep: Any = weights > _NEGLIGIBLE
     kept = weights[keep]
     return Mixture(centres[keep], scales[keep], kept / kept.sum(), freedom)

@@ -17,6 +17,7 @@ from pytest_growthbudget.fitting.excess import (
     Observations,
     fit_lines,
     observe,
+    pruned,
     walk,
     whitened,
 )
@@ -45,9 +46,15 @@ _WIDEST: Final = 1.0
 
 
 def forecast(
-    seen: Observations, log_growth: LogGrowth, *, exponential: bool, confidence: float, noise: float
+    seen: Observations,
+    log_growth: LogGrowth,
+    *,
+    exponential: bool,
+    confidence: float,
+    noise: float,
+    at: Sequence[int] = (),
 ) -> tuple[ForecastRow, ...]:
-    """Forecasts at a few larger sizes, as far as the cost stays below thirty thousand years in nanoseconds."""
+    """Forecasts at the sizes `at`, or at a few larger ones, as far as the cost stays below thirty thousand years in nanoseconds."""
     levels = ((1 - confidence) / 2, 0.5, (1 + confidence) / 2)
     fitted, growth = seen, log_growth
     base = None if exponential else steep_base(seen)
@@ -56,7 +63,7 @@ def forecast(
         fitted, exponential = observe(seen.sizes, seen.costs, growth, exponential=True), True
     lines = fit_lines(fitted, noise)
     rows = []
-    for size in forecast_sizes(int(seen.sizes[-1]), exponential=exponential):
+    for size in at or forecast_sizes(int(seen.sizes[-1]), exponential=exponential):
         mixture = log_cost_at(fitted, lines, growth(size), growth(size) if exponential else math.log(size))
         low, middle, high = mixture.quantiles(levels)
         if middle > _GREATEST_LOG_COST:
@@ -99,8 +106,7 @@ def log_cost_at(seen: Observations, lines: Lines, allowed: float, regressor: flo
     s11, s12, s22 = (one * one).sum(-1), (one * tilt).sum(-1), (tilt * tilt).sum(-1)
     spread = (a1 * a1 * s22 - 2 * a1 * a2 * s12 + a2 * a2 * s11) / det
     scale = np.sqrt(rss / lines.freedom * np.maximum(unexplained + spread, 1e-12))
-    weights = lines.weights()[plain]
-    return Mixture(centre.ravel(), scale.ravel(), weights.ravel() / weights.sum(), lines.freedom)
+    return pruned(centre, scale, lines.weights()[plain], lines.freedom)
 
 
 def allowed_cost(seen: Observations, log_growth: LogGrowth, size: float) -> float:

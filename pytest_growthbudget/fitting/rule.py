@@ -90,8 +90,9 @@ class _Clock:
         """Cache-resident sizes and cheap calls; a look ahead before the budget is said to be kept."""
         run = self.run
         yield from run.climb(Climb(STAGE_A_COST, RESIDENT, STAGE_A_SIZES))
-        if run.readable < STAGE_A_SIZES:
-            yield from run.climb(Climb(STAGE_B_COST, RESIDENT, STAGE_A_SIZES))
+        for dearer in (STAGE_B_COST, STAGE_C_COST, float("inf")):
+            if run.readable < STAGE_A_SIZES:
+                yield from run.climb(Climb(dearer, 0.0, STAGE_A_SIZES))
         if run.readable < FEWEST_SIZES:
             return self.unmeasured()
         self.first = run.ladder.readable

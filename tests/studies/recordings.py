@@ -180,13 +180,15 @@ def trials(session: str) -> Iterator[Trial]:
 class Replay:
     """Answers requests from a recording. `plan(cost)`: readings a size, None for all that were recorded.
 
-    `climb_costs`: the ladder's costs are the smaller of two calls, not the lower quartile of the first set.
+    `keep`: the ladder ends after so many readable sizes, for lack of time. `climb_costs`: the ladder's costs are
+    the smaller of two calls, not the lower quartile of the first set.
     """
 
     trial: Trial
     plan: Callable[[float], int] | None = None
     climb_costs: bool = False
     with_curve: bool = True
+    keep: int | None = None
     nanoseconds: float = 0.0
     curve_asked: bool = False
     climbed: int = 0
@@ -223,7 +225,8 @@ class Replay:
 
     def climb(self, request: Climb) -> Ladder:
         recording = self.trial.recording
-        for index in range(self.climbed, len(recording.sizes)):
+        most = len(recording.sizes) if self.keep is None else min(self.readable + self.keep, len(recording.sizes))
+        for index in range(self.climbed, most):
             enough = index - self.readable >= request.at_least
             if self.costs[index] > request.cost or (recording.footprints[index] > request.footprint and enough):
                 break
@@ -233,7 +236,7 @@ class Replay:
             sizes=recording.sizes[:last],
             costs=tuple(self.costs[:last]),
             footprints=recording.footprints[:last],
-            ended="largest" if last == len(recording.sizes) else "",
+            ended="" if last < most else "largest" if self.keep is None else "time",
             readable=self.readable,
         )
 
@@ -250,6 +253,8 @@ class Replay:
 
     def peek(self, request: Peek) -> Peeked | None:
         recording = self.trial.recording
+        if self.keep is not None:
+            return None
         fits = [
             cost <= request.cost and footprint <= request.footprint
             for cost, footprint in zip(self.costs, recording.footprints, strict=True)

@@ -1,0 +1,168 @@
+"""The predicates of the verdict, and the limits they use."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import asdict, replace
+
+import numpy as np
+import pytest
+
+from pytest_growthbudget.fitting.evidence import Evidence, assemble
+from pytest_growthbudget.fitting.verdict import (
+    Says,
+    clock_limits,
+    count_limits,
+    exceeds,
+    given_limits,
+    is_cheap,
+    is_exceeded,
+    is_suspicious,
+    is_within,
+    rises_enough,
+)
+from pytest_growthbudget.measuring.readings import MemoryCurve, Promise
+
+SIZES = [int(12 * 2 ** (step / 2)) for step in range(18)]
+LIMITS = clock_limits()
+STEEP = MemoryCurve(
+    log_bytes=(math.log(2**16), math.log(2**20), math.log(2**24)),
+    log_inflation=(0.0, math.log(1.2), math.log(10)),
+    extra=(0.0, 3.0, 50.0),
+    resident=2.0**20,
+    cheapest=3.0,
+)
+
+
+def evidence(cost, exponent=1.0, *, sizes=SIZES, bytes_each=1.0, curve=None) -> Evidence:  # type: ignore[no-untyped-def]
+    return assemble(
+        Promise(log_growth=lambda n: exponent * math.log(n)),
+        sizes,
+        [cost(n) for n in sizes],
+        [bytes_each * n for n in sizes],
+        [5] * len(sizes),
+        lambda: curve,
+        0.01,
+    )
+
+
+def says(case: Evidence, curve: MemoryCurve | None = None) -> Says:
+    return exceeds(case, LIMITS.exceeded, LIMITS, lambda: curve)
+
+
+def unwanted() -> MemoryCurve:
+    raise AssertionError("the memory curve was asked for without need")
+
+
+def test_a_larger_slack_moves_every_limit_alike() -> None:
+    usual, wide = asdict(clock_limits(0.15)), asdict(clock_limits(0.40))
+    moved = {name: wide[name] - usual[name] for name in usual if name not in ("confidence", "exceeded_flat")}
+    assert all(each == pytest.approx(0.25) for each in moved.values())
+    assert wide["exceeded_flat"] == 0.40
+
+
+def test_a_smaller_slack_leaves_the_suspicions() -> None:
+    usual, narrow = clock_limits(0.15), clock_limits(0.05)
+    assert narrow.exceeded == 0.05
+    assert (narrow.suspect, narrow.suspect_later, narrow.resident) == (
+        usual.suspect,
+        usual.suspect_later,
+        usual.resident,
+    )
+
+
+def test_counts_and_given_costs_have_their_own_limits() -> None:
+    assert count_limits(0.05).within == pytest.approx(0.10)
+    assert given_limits(0.15) == clock_limits(0.15)
+    assert given_limits(0.05).within == pytest.approx(0.10)
+    assert given_limits(0.0).within == 0.0
+
+
+def test_an_excess_is_shown_and_none_is_not() -> None:
+    square, line = evidence(lambda n: n**2), evidence(lambda n: n)
+    assert is_exceeded(square.plain, square.plain, 1.0, 0.15, LIMITS)
+    assert not is_within(square.plain, 1.0, LIMITS)
+    assert is_within(line.plain, 1.0, LIMITS)
+    assert not is_exceeded(line.plain, line.plain, 1.0, 0.15, LIMITS)
+
+
+def test_an_excess_in_what_is_a_trifle_at_the_largest_size_is_not_shown() -> None:
+    """A square that makes up a thousandth of the cost: surely a square, but not what the body costs."""
+    case = evidence(lambda n: 4e6 + 4e6 * 0.001 * (n / SIZES[-1]) ** 2)
+    assert not is_exceeded(case.plain, case.plain, 1.0, 0.15, LIMITS)
+
+
+def test_a_flat_budget_is_judged_at_the_largest_size() -> None:
+    case = evidence(lambda n: 1e6 + 30 * n, 0.0)
+    assert case.plain.delta.interval().estimate > 0.5
+    assert is_within(case.plain, 0.0, LIMITS)
+    assert not is_suspicious(case.plain, 0.0, 0.02, LIMITS)
+
+
+def test_suspicion_is_a_lower_bound_above_the_limit() -> None:
+    case = evidence(lambda n: n**1.1)
+    assert is_suspicious(case.plain, 1.0, 0.05, LIMITS)
+    assert not is_suspicious(case.plain, 1.0, 0.11, LIMITS)
+
+
+def test_small_footprints_need_no_curve() -> None:
+    assert exceeds(evidence(lambda n: n**2), 0.15, LIMITS, unwanted) is Says.YES
+    assert exceeds(evidence(lambda n: n, bytes_each=1e6), 0.15, LIMITS, unwanted) is Says.NO
+
+
+def test_memory_excuses_what_it_explains() -> None:
+    """A linear body that slows down exactly as the curve says, by up to ten times; 90 ns an element at the start."""
+    grid = np.exp(STEEP.log_bytes)
+
+    def cost(n: float) -> float:
+        held = 3e3 * n
+        return 30 * n * math.exp(np.interp(math.log(held), np.log(grid), STEEP.log_inflation))
+
+    case = evidence(cost, bytes_each=3e3, curve=STEEP)
+    assert is_exceeded(case.plain, case.plain, 1.0, 0.15, LIMITS)
+    assert says(case, STEEP) is Says.NO
+
+
+def test_without_a_curve_nothing_large_is_exceeded() -> None:
+    case = evidence(lambda n: 30 * n**1.4, bytes_each=3e3)
+    assert says(case, None) is Says.NOT_WITHOUT_CURVE
+
+
+def test_without_a_curve_small_sizes_or_a_hopeless_excess_suffice() -> None:
+    sizes = [int(12 * 2 ** (step / 2)) for step in range(24)]
+    assert says(evidence(lambda n: 30 * n**2.5, sizes=sizes, bytes_each=3e3), None) is Says.YES
+    partly_small = evidence(lambda n: 30 * n**1.5, sizes=sizes, bytes_each=200.0)
+    assert partly_small.footprint > 256 * 1024
+    assert says(partly_small, None) is Says.YES
+
+
+def test_unknown_footprints_are_like_no_curve() -> None:
+    case = evidence(lambda n: 30 * n**1.4, bytes_each=0.0, curve=STEEP)
+    assert case.allowed is None
+    assert says(case, STEEP) is Says.NOT_WITHOUT_CURVE
+    assert says(evidence(lambda n: 30 * n**2.5, bytes_each=0.0, curve=STEEP), STEEP) is Says.YES
+
+
+def test_a_body_cheaper_than_the_kernels_is_judged_on_resident_sizes() -> None:
+    def cost(n: float) -> float:
+        return 0.5 * n * (1 if n < 1000 else (n / 1000) ** 0.8)
+
+    case = evidence(cost, bytes_each=2.0**10, curve=STEEP)
+    assert is_cheap(case, STEEP)
+    assert says(case, STEEP) is Says.NO
+    assert not is_cheap(case, replace(STEEP, cheapest=0.1))
+
+
+@pytest.mark.parametrize("count", [5, 6, 7, 8])
+def test_few_sizes_must_show_a_threefold_rise(count: int) -> None:
+    """A single resize among five to eight sizes looks like a sure excess; a rise by three does not come from one."""
+    few = SIZES[:count]
+    middling = evidence(lambda n: n**1.25, sizes=few)
+    assert is_exceeded(middling.plain, middling.plain, 1.0, 0.15, LIMITS)
+    assert not rises_enough(middling.seen)
+    assert says(middling) is Says.NO
+    assert says(evidence(lambda n: n**2, sizes=few)) is (Says.YES if count > 4 else Says.NO)
+
+
+def test_fewer_than_five_sizes_say_nothing() -> None:
+    assert says(evidence(lambda n: n**4, sizes=SIZES[:4])) is Says.NO
