@@ -16,6 +16,7 @@ from pytest_growthbudget.workloads.fixtures import (
     Shared,
     metered,
     problem_size,
+    settings_key,
     shared_key,
     tally,
     workload_rng,
@@ -23,8 +24,6 @@ from pytest_growthbudget.workloads.fixtures import (
 from pytest_growthbudget.workloads.repeat import GrowthItem
 
 __all__ = ["metered", "problem_size", "tally", "workload_rng"]
-
-settings_key = pytest.StashKey[settings_module.Settings]()
 
 
 def pytest_addhooks(pluginmanager: pytest.PytestPluginManager) -> None:

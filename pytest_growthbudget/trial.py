@@ -13,13 +13,14 @@ import pytest
 from pytest_growthbudget.fitting.judgement import Finding, ForecastRow, Judgement
 from pytest_growthbudget.measuring.campaign import Campaign, Limits
 from pytest_growthbudget.measuring.guards import Watch
-from pytest_growthbudget.measuring.readings import MemoryCurve, Promise, Reading
+from pytest_growthbudget.measuring.readings import MemoryCurve, Promise
 from pytest_growthbudget.measuring.yardstick import YardstickGrowth
 from pytest_growthbudget.meters import clocks
-from pytest_growthbudget.meters.protocol import Meter, MeterError, checked_cost, close_meter, notes_of
+from pytest_growthbudget.meters.protocol import MeterError, close_meter
 from pytest_growthbudget.reporting.wire import to_wire
+from pytest_growthbudget.taking import Taker
 from pytest_growthbudget.workloads.collect import meter_of
-from pytest_growthbudget.workloads.fixtures import shared_key
+from pytest_growthbudget.workloads.fixtures import settings_key, shared_key
 from pytest_growthbudget.workloads.rays import Ray, rays
 from pytest_growthbudget.workloads.repeat import (
     BodyFailed,
@@ -35,6 +36,9 @@ if TYPE_CHECKING:
 #: The memory curve of this machine by its key, once it was needed: it outlives a run within one process.
 _curves: dict[str, MemoryCurve] = {}
 CURVE_CACHE = "growthbudget/memory_curve"
+#: Below these costs, by unit, the fixed parts of a count drown what grows.
+FLOOR = {"bytes": 1024.0, "ns": 5_000.0}
+FEW_COUNTS = 30.0
 #: From the best verdict of a ray to the worst; the worst is the test's.
 WORSE = ("within", "undecided", "unmeasured", "exceeded")
 
@@ -50,6 +54,10 @@ def hold(item: GrowthItem) -> None:
             except BodyFailed as error:
                 failure = error
                 break
+            if plan.audit is not None:
+                from pytest_growthbudget.audited import audit_test
+
+                wire["audit"] = audit_test(item, plan, judgement, forget)
             item.ihook.pytest_growthbudget_judged(item=item, judgement=judgement)
             item.judgements.append(wire)
     if failure is not None:
@@ -90,8 +98,25 @@ def judge_plan(item: GrowthItem, plan: Plan, forget: Callable[[], None]) -> Judg
         if judged[-1].verdict == "exceeded":
             break
     worst = max(judged, key=lambda judgement: WORSE.index(judgement.verdict))
+    if plan.meter == "steps" and worst.verdict == "within" and all(p.meter != "cpu_time" for p in item.plans):
+        worst = _with_hidden_work(item, plan, worst, forget)
     named = tuple((judgement.ray, judgement.verdict) for judgement in judged) if len(every) > 1 else ()
     return replace(worst, rays=named, seconds=(clocks.wall_time_ns() - began) / 1e9)
+
+
+def _with_hidden_work(item: GrowthItem, plan: Plan, counted: Judgement, forget: Callable[[], None]) -> Judgement:
+    """`counted`, unless the time behind the lines counted outgrows the budget: work inside C calls, which no line
+    count sees.
+    """
+    slack = item.config.stash[settings_key].slack_of("cpu_time")
+    timed = judge_plan(item, replace(plan, meter="cpu_time", slack=max(slack, plan.slack), at=None), forget)
+    if timed.verdict == "exceeded":
+        reason = f"the lines executed keep the budget, the time they take does not: {timed.reason}"
+        return replace(timed, meter="cpu_time hidden behind steps", reason=reason)
+    if timed.verdict == "within":
+        return counted
+    note = f"whether time hides behind the steps, inside C calls, was {timed.verdict}: {timed.reason}."
+    return replace(counted, notes=(*counted.notes, note))
 
 
 def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget: Callable[[], None]) -> Judgement:
@@ -124,8 +149,9 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
         deterministic=meter.deterministic,
         curve=curve,
     )
+    take = Taker(repeater, meter, forget, plan.yardstick, reference)
     campaign = Campaign(
-        take=taker(repeater, meter, forget, plan.yardstick, reference),
+        take=take,
         footprint=repeater.footprint,
         now=clocks.wall_time_ns,
         limits=Limits(
@@ -135,6 +161,7 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
             exponential=promise.exponential,
             repeatable=repeater.repeatable and plan.yardstick is None,
             clock=not meter.deterministic,
+            floor=FLOOR.get(meter.unit, FEW_COUNTS if meter.deterministic else FLOOR["ns"]),
         ),
         seed=f"{plan.seed}/{item.nodeid}/{plan.meter}/{ray.name}",
     )
@@ -143,8 +170,10 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
     try:
         with watch.start():
             finding = on_one_scale(campaign.run(decide(promise)), log_growth)
-        notes = notes_of(meter)
+        notes = take.notes()
         if plan.at is not None and plan.ceiling is not None:
+            from pytest_growthbudget.fitting.ceiling import under_ceiling
+
             finding, ceiling = under_ceiling(finding, promise, plan.at, plan.ceiling)
     except MeterError as error:
         finding = Finding(verdict="unmeasured", reason=str(error))
@@ -202,66 +231,6 @@ def _scale(finding: Finding, log_growth: Callable[[float], float]) -> float | No
 
 def _allowed_at(size: int, scale: float, log_growth: Callable[[float], float]) -> float:
     return math.exp(min(scale + log_growth(size), 700.0))
-
-
-def under_ceiling(finding: Finding, promise: Promise, at: int, ceiling: float) -> tuple[Finding, ForecastRow | None]:
-    """`finding`, unless the forecast at size `at` passes `ceiling`; and that forecast beside the ceiling.
-
-    Exceeded where the forecast itself passes the ceiling, undecided where only its interval reaches over it.
-    """
-    from pytest_growthbudget.fitting.excess import CLOCK_NOISE, FEWEST_SIZES, observe
-    from pytest_growthbudget.fitting.forecast import forecast_cost
-
-    rows = [row for row in finding.sizes if row.cost > 0]
-    if finding.verdict not in ("within", "undecided") or len(rows) < FEWEST_SIZES:
-        return finding, None
-    seen = observe(
-        [row.size for row in rows],
-        [row.cost for row in rows],
-        promise.log_growth,
-        exponential=promise.exponential,
-    )
-    cost = forecast_cost(
-        seen,
-        promise.log_growth,
-        at,
-        exponential=promise.exponential,
-        confidence=promise.confidence,
-        noise=CLOCK_NOISE,
-    )
-    row = ForecastRow(size=at, cost=cost, allowed=ceiling)
-    if cost.estimate > ceiling:
-        reason = "the growth is kept, but the cost foreseen at the size named passes its ceiling"
-        return replace(finding, verdict="exceeded", reason=reason), row
-    if cost.high > ceiling and finding.verdict == "within":
-        reason = "the growth is kept, but the interval of the cost foreseen reaches over its ceiling"
-        return replace(finding, verdict="undecided", reason=reason), row
-    return finding, row
-
-
-def taker(
-    repeater: Repeater,
-    meter: Meter,
-    forget: Callable[[], None],
-    reference: Callable[..., object] | None,
-    growth: YardstickGrowth,
-) -> Callable[[int, int], Reading]:
-    """What the campaign calls for one reading. Warnings that the body gave are forgotten after each.
-
-    With a yardstick each reading of the body is followed by one of the reference on the same workload, and scaled
-    by how that one stood to the reference's usual cost: what slows both down at the time cancels out.
-    """
-
-    def take(size: int, calls: int) -> Reading:
-        taken = repeater.take(size, meter, calls)
-        cost = checked_cost(meter, taken.cost)
-        if reference is not None:
-            beside = checked_cost(meter, repeater.yardstick(size, meter, reference))
-            cost *= growth.add(size, beside) / max(beside, 1e-9)
-        forget()
-        return Reading(size=size, cost=cost, calls=calls, wall=taken.wall, elapsed=taken.elapsed)
-
-    return take
 
 
 def memory_curve(config: pytest.Config) -> MemoryCurve | None:

@@ -38,7 +38,8 @@ RISK_OF_PEEK = 30.0
 class Limits:
     """What a campaign may spend, and how it reads. Times in nanoseconds, `memory` in bytes.
 
-    `floor`: the shortest reading that the clock can be trusted with. `repeatable`: the body may be called many
+    `floor`: the smallest reading that the meter can be trusted with; for a meter that is no clock, the cost below
+    which fixed parts drown the growing ones. `repeatable`: the body may be called many
     times in one reading. `clock`: the meter reads time, so dear calls are read less often; a deterministic meter
     is read once a size and climbs until a reading takes `dear` of wall time.
     """
@@ -192,6 +193,8 @@ class Campaign:
         """Take two calls at `size`, the cheaper of which counts, and put it on the ladder."""
         calls = self._calls_at(size)
         try:
+            if not self.limits.clock and not self._rungs:
+                self.take(size, calls)  # what the first call alone imports or caches is no growth
             readings = [self.take(size, calls)]
             if self.limits.repeatable and self._below_floor(readings[0]):
                 calls = self._calls_for(readings[0].cost)
@@ -248,7 +251,8 @@ class Campaign:
             costs=tuple(rung.cost for rung in rungs),
             footprints=tuple(self._bytes_at(rung.size) for rung in rungs),
             ended=self._ended,
-            readable=readable if self.limits.clock else 0,
+            # A promise of a constant may stay below the floor of a count for ever.
+            readable=readable if self.limits.clock or readable < len(rungs) else 0,
         )
 
     # ------------------------------------------------------------ footprints

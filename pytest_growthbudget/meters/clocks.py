@@ -6,6 +6,8 @@ The functions are taken from `time` when this module is imported, so that a test
 
 from __future__ import annotations
 
+from collections.abc import Callable
+from functools import lru_cache
 from time import perf_counter_ns, process_time_ns
 from typing import Final
 
@@ -13,21 +15,29 @@ cpu_time_ns: Final = process_time_ns
 wall_time_ns: Final = perf_counter_ns
 
 
-def tick_ns(clock: object = None, *, looks: int = 20) -> int:
-    """The smallest step that the CPU clock (or `clock`) shows, in nanoseconds.
+#: Steps of a clock, in nanoseconds, above which short readings are not to be had.
+COARSE_TICK: Final = 1_000_000
 
-    The resolution that the platform reports is not the step at which its clock advances (a Windows CPU clock
-    reports 100 ns and steps by 15.6 ms), so the step is measured: the smallest of `looks` increments seen.
+
+def tick_ns(clock: Callable[[], int] = cpu_time_ns, *, looks: int = 3) -> int:
+    """The smallest step that `clock` shows, in nanoseconds: the smallest of `looks` increments seen.
+
+    The resolution that a platform reports is not the step at which its clock advances (a Windows CPU clock reports
+    100 ns and steps by 15.6 ms), so the step is measured.
     """
-    read = cpu_time_ns if clock is None else clock
-    assert callable(read)
-    smallest = 0
+    steps = []
     for _ in range(looks):
-        start = now = read()
+        start = now = clock()
         while now == start:
-            now = read()
-        smallest = min(smallest or now - start, now - start)
-    return smallest
+            now = clock()
+        steps.append(now - start)
+    return min(steps)
+
+
+@lru_cache(maxsize=1)
+def cpu_clock() -> Callable[[], int]:
+    """The clock that the meter `cpu_time` reads: elapsed time where the CPU clock's measured step is too coarse."""
+    return cpu_time_ns if tick_ns() <= COARSE_TICK else wall_time_ns
 
 
 class CpuTime:
@@ -39,12 +49,13 @@ class CpuTime:
 
     def __init__(self) -> None:
         self._start = 0
+        self._clock = cpu_clock()
 
     def start(self) -> None:
-        self._start = cpu_time_ns()
+        self._start = self._clock()
 
     def stop(self) -> float:
-        return cpu_time_ns() - self._start
+        return self._clock() - self._start
 
 
 class WallTime:

@@ -111,7 +111,7 @@ def check_yardstick(reference: Callable[..., object], item: pytest.Function, sou
 
 
 #: The meters of other plugins, asked for once.
-own_meters_key = pytest.StashKey["list[Meter]"]()
+own_meters_key = pytest.StashKey["Iterable[Meter]"]()
 
 
 def meter_of(name: str, config: pytest.Config) -> Meter:

@@ -7,11 +7,15 @@ from typing import TYPE_CHECKING, Any
 
 import pytest
 
+from pytest_growthbudget.settings import Settings
+
 if TYPE_CHECKING:
     from types import TracebackType
 
     from pytest_growthbudget.meters.protocol import Meter
 
+#: The settings of the run.
+settings_key = pytest.StashKey[Settings]()
 #: What one session shares between the fixtures and the readings.
 shared_key = pytest.StashKey["Shared"]()
 

@@ -112,6 +112,7 @@ class Taken:
     cost: float
     calls: int
     wall: float
+    cpu: float
     elapsed: float
 
 
@@ -169,13 +170,14 @@ class Repeater:
             meter.start()
             try:
                 reference(*values)
+                return meter.stop()
             except Exception as error:
+                meter.stop()
                 name = getattr(reference, "__name__", "the yardstick")
                 raise MeterError(
                     f"the yardstick {name} raised {type(error).__name__} at size {size}: {error}. "
                     "It is called with the arguments of the test, in their order."
                 ) from error
-            return meter.stop()
 
     def take(self, size: int, meter: Meter, calls: int = 1) -> Taken:
         """Build the workload of `size`, then read `calls` calls of the body with `meter`.
@@ -189,24 +191,21 @@ class Repeater:
             try:
                 if self._uses_metered:
                     metered.arm(meter)
-                    wall = clocks.wall_time_ns()
+                    cpu, wall = clocks.cpu_time_ns(), clocks.wall_time_ns()
                     function(**arguments)
-                    wall = clocks.wall_time_ns() - wall
+                    wall, cpu = clocks.wall_time_ns() - wall, clocks.cpu_time_ns() - cpu
                     cost = metered.cost
-                elif calls == 1:
-                    wall = clocks.wall_time_ns()
-                    meter.start()
-                    function(**arguments)
-                    cost = meter.stop()
-                    wall = clocks.wall_time_ns() - wall
                 else:
-                    rest = range(calls)
-                    wall = clocks.wall_time_ns()
+                    rest = range(calls - 1)
+                    cpu, wall = clocks.cpu_time_ns(), clocks.wall_time_ns()
                     meter.start()
-                    for _ in rest:
+                    try:
                         function(**arguments)
-                    cost = meter.stop()
-                    wall = clocks.wall_time_ns() - wall
+                        for _ in rest:
+                            function(**arguments)
+                    finally:
+                        cost = meter.stop()
+                    wall, cpu = clocks.wall_time_ns() - wall, clocks.cpu_time_ns() - cpu
             finally:
                 entered = metered.entered
                 metered.arm(None)
@@ -216,7 +215,8 @@ class Repeater:
                     "put the code that the budget is about into that block"
                 )
             del arguments
-        return Taken(cost=cost / calls, calls=calls, wall=wall / calls, elapsed=clocks.wall_time_ns() - began)
+        elapsed = clocks.wall_time_ns() - began
+        return Taken(cost=cost / calls, calls=calls, wall=wall / calls, cpu=cpu / calls, elapsed=elapsed)
 
     def footprint(self, size: int) -> float:
         """Bytes at peak of building the workload of `size` and one call, by tracemalloc."""

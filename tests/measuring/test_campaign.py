@@ -253,7 +253,13 @@ def test_no_look_ahead_past_the_largest_size() -> None:
 
 def test_a_deterministic_meter_is_read_once_and_climbs_by_the_time_a_reading_takes() -> None:
     bench = Bench(lambda n: float(n), build=lambda n: 1e3 * n)
-    ladder, series = bench.campaign(clock=False, dear=30 * MS).run(asks(Climb(math.inf, at_least=12), Rounds(0, 99)))
+    ladder, series = bench.campaign(clock=False, dear=30 * MS, floor=10.0).run(asks(Climb(math.inf, at_least=12), Rounds(0, 99)))
     assert len(ladder.sizes) >= 12
-    assert ladder.readable == 0
+    assert ladder.costs[ladder.readable - 1] < 10.0 <= ladder.costs[ladder.readable]
     assert {len(costs) for costs in series.costs} == {1}
+    assert bench.taken[0] == bench.taken[1], "the first call warms up and does not count"
+
+
+def test_a_count_that_stays_below_the_floor_is_readable_all_the_same() -> None:
+    ladder = climb(Bench(lambda n: 1.0, build=lambda n: 1e3 * n), clock=False, floor=10.0)
+    assert ladder.readable == 0
