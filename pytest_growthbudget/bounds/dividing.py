@@ -21,6 +21,7 @@ from pytest_growthbudget.bounds.derivation import (
     ratio,
     root,
     show,
+    superpolynomial,
     toll_text,
 )
 from pytest_growthbudget.bounds.enclosure import compare_numbers, sign, to_float
@@ -38,6 +39,8 @@ def dividing(rec: Recurrence) -> Derivation | None:
         return None
     if not main:
         return _only_toll(rec)
+    if superpolynomial(rec.toll):
+        raise Unsolved("an exponential toll beside exponential coefficients is not solved")
     v = rec.variable
     pairs: list[tuple[Number, Number]] = [(known(t), -ln_number(ratio(t))) for t in main]
     toll = rec.toll
@@ -133,8 +136,9 @@ def _check_minor(rec: Recurrence, minor: list[Term], p: Number, relation: int, s
     """Terms that add less than a power of n: c(n) = n^γ…, argument n^θ…, with γ + θe < e.
 
     Here e is the larger of p and the toll's exponent. T = O(n^E) holds for some large E, as γ + θE < E there. Then
-    the minor terms are tolls of exponent γ + θE; repeating lowers E to just above e, where these tolls are polynomially below n^e and change nothing.
-    A coefficient that merely tends to 0 is enough where the toll dominates (its regularity is strict).
+    the minor terms are tolls of exponent γ + θE; repeating lowers E to just above e, where these tolls are
+    polynomially below n^e and change nothing. A coefficient that merely tends to 0 is enough where the toll
+    dominates (its regularity is strict).
     """
     e = rec.toll.power if relation > 0 and rec.toll is not None else p
     for term in minor:

@@ -221,7 +221,10 @@ def floor_number(x: Number) -> int:
     """The largest integer at most x; raises Undecidable where no proof tells."""
     if not isinstance(x, Real):
         return x.numerator // x.denominator
-    guess = math.floor(to_float(x))
+    near = to_float(x)
+    if abs(near) > 2.0**50:
+        raise Undecidable("a number here is too large to be rounded")
+    guess = math.floor(near)
     while compare_numbers(x, Fraction(guess)) < 0:
         guess -= 1
     while compare_numbers(x, Fraction(guess + 1)) >= 0:

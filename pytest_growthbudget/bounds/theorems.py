@@ -40,12 +40,12 @@ def dominant_toll(rec: Recurrence) -> Derivation | None:
     """Exponential or factorial tolls where every argument is at most a fixed part of n.
 
     Then f(bn)/f(n) falls faster than any power of n, so Σ cᵢ(n) f(bᵢ n) ≤ f(n)/2 for large n whatever the
-    polynomially bounded cᵢ, and T = Θ(f) by induction.
+    cᵢ of at most polynomial growth, and T = Θ(f) by induction.
     """
     if not superpolynomial(rec.toll) or rec.toll is None:
         return None
     for term in rec.terms:
-        if not isinstance(term.argument, (Ratio, Root)) or term.growth.factorial or term.growth.rate:
+        if not isinstance(term.argument, (Ratio, Root)) or superpolynomial(term.growth):
             return None
     toll = toll_text(rec)
     return Derivation(

@@ -93,7 +93,8 @@ def _steps(code: Any) -> list[list[tuple[float, float]]]:
             return values[x] if x >= 8 else one
 
         for n in range(top + 1):
-            values.append(one if n < 8 else mpmath.mpf(eval(code, {**names, "T": t, "n": n})))
+            here = one if n < 8 else mpmath.mpf(eval(code, {**names, "T": t, "n": n}))
+            values += [here]
         return [[(math.log(n), float(mpmath.log(values[n])))] for n in (top // 4, top)]
 
 
