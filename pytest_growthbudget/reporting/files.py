@@ -5,10 +5,10 @@ from __future__ import annotations
 import os
 import stat
 import tempfile
-import time
 from collections.abc import Iterator
 from contextlib import contextmanager, suppress
 from pathlib import Path
+from time import sleep
 
 _PAUSE = 0.02
 _ATTEMPTS = 500
@@ -92,7 +92,7 @@ def locked(descriptor: int) -> Iterator[None]:
         held = try_lock(descriptor)
         if held is not False:
             break
-        time.sleep(_PAUSE)
+        sleep(_PAUSE)
     try:
         yield
     finally:

@@ -56,6 +56,7 @@ class GrowthItem(pytest.Item):
             template=template,
             plans=plans,
         )
+        internals.hide_size_id(template)
         internals.share_stash(template, item)
         return item
 
