@@ -9,21 +9,24 @@ import importlib
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
+    from pytest_growthbudget.auditing.audit import Audit, audit
     from pytest_growthbudget.bounds.budget import Budget, compare, parse_budget
     from pytest_growthbudget.bounds.language import BoundError
     from pytest_growthbudget.fitting.judge import judge
     from pytest_growthbudget.fitting.judgement import Judgement
 
 _HOME = {
+    "Audit": "pytest_growthbudget.auditing.audit",
     "BoundError": "pytest_growthbudget.bounds.language",
     "Budget": "pytest_growthbudget.bounds.budget",
     "Judgement": "pytest_growthbudget.fitting.judgement",
+    "audit": "pytest_growthbudget.auditing.audit",
     "compare": "pytest_growthbudget.bounds.budget",
     "judge": "pytest_growthbudget.fitting.judge",
     "parse_budget": "pytest_growthbudget.bounds.budget",
 }
 
-__all__ = ["BoundError", "Budget", "Judgement", "compare", "judge", "parse_budget"]
+__all__ = ["Audit", "BoundError", "Budget", "Judgement", "audit", "compare", "judge", "parse_budget"]
 
 
 def __getattr__(name: str) -> Any:

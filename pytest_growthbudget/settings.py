@@ -88,7 +88,8 @@ class Plan:
     """One budget on one test, every setting resolved. `source` says where it was declared.
 
     `budget` is None where a `yardstick` is the budget. `at` and `ceiling`: the upper forecast at that size may not
-    pass that cost, in the meter's unit.
+    pass that cost, in the meter's unit. `audit`: the function whose calls are held against the recurrence, and
+    `size_of` what gives their sizes (see `auditing.target`).
     """
 
     budget: Budget | CallableBudget | None
@@ -106,6 +107,8 @@ class Plan:
     at: int | None = None
     ceiling: float | None = None
     ratchet: Ratchet | None = None
+    audit: Any = None
+    size_of: Any = None
 
     @property
     def size_names(self) -> tuple[str, ...]:
@@ -173,6 +176,12 @@ def _function(value: Any) -> Any:
     return value
 
 
+def _audited(value: Any) -> Any:
+    if not callable(value) and not (isinstance(value, str) and ":" in value):
+        raise ValueError('a function, or text such as "package.module:function"')
+    return value
+
+
 #: The units in which a ceiling may be given, in the units of the meters.
 _UNITS = {"ns": 1.0, "us": 1e3, "ms": 1e6, "s": 1e9, "min": 60e9, "h": 3600e9}
 _UNITS |= {"B": 1.0, "kB": 1e3, "MB": 1e6, "GB": 1e9, "KiB": 2.0**10, "MiB": 2.0**20, "GiB": 2.0**30}
@@ -205,6 +214,8 @@ _CHECKS: dict[str, Callable[[Any], Any]] = {
     "yardstick": _function,
     "cost": _cost,
     "accepted": _text,
+    "audit": _audited,
+    "size_of": _audited,
     "margin": _number(0, 10, "a positive exponent below 10"),
 }
 
@@ -314,6 +325,8 @@ def growth_budget(
     undecided: str | None = None,
     at: int | None = None,
     cost: str | float | None = None,
+    audit: Callable[..., Any] | str | None = None,
+    size_of: Callable[..., float] | str | None = None,
 ) -> None:
     """The signature of the marker; called by nobody."""
 
@@ -354,6 +367,8 @@ def plan_of(args: tuple[Any, ...], kwargs: Mapping[str, Any], settings: Settings
     meter = given.get("meter", "cpu_time")
     if ("at" in given) != ("cost" in given):
         raise SettingsError(f"{source}: `at` and `cost` go together: the size, and the ceiling of the cost there")
+    if "size_of" in given and "audit" not in given:
+        raise SettingsError(f"{source}: size_of gives the sizes of an audited function; say which: audit=...")
     smallest, largest = given.get("smallest"), given.get("largest")
     if smallest is not None and largest is not None and largest < 2 * smallest:
         raise SettingsError(
@@ -375,6 +390,8 @@ def plan_of(args: tuple[Any, ...], kwargs: Mapping[str, Any], settings: Settings
         at=given.get("at"),
         ceiling=given.get("cost"),
         ratchet=settings.ratchet,
+        audit=given.get("audit"),
+        size_of=given.get("size_of"),
     )
 
 
@@ -450,7 +467,21 @@ def plans_for(item: pytest.Item, nodeid: str, settings: Settings) -> tuple[Plan,
             arguments = {k: v for k, v in placed.arguments.items() if k not in settings.from_command_line}
             plan = plan_of((), arguments, settings, placed.source)
             plans.setdefault(plan.meter, plan)
+    for plan in plans.values():
+        _check_audit(plan)
     return tuple(plans.values())
+
+
+def _check_audit(plan: Plan) -> None:
+    """Raises `SettingsError` where the function to audit cannot be found, or its calls would have no size."""
+    if plan.audit is None:
+        return
+    from pytest_growthbudget.auditing.target import TargetError, resolve, sizer
+
+    try:
+        sizer(resolve(plan.audit), plan.size_of)
+    except TargetError as error:
+        raise SettingsError(f"{plan.source}: {error}") from None
 
 
 # ------------------------------------------------------------------ command line, and the whole

@@ -154,8 +154,8 @@ def run(meter: CallMeter, body: Callable[[], object]) -> None:
     meter.stop()
 
 
-def repeat(meter: CallMeter, take: Take, *, at_least: int = _FEWEST_RUNS) -> None:
-    """Take runs until there are calls enough, or they have taken long enough; `at_least` so many.
+def repeat(meter: CallMeter, take: Take, *, at_least: int = _FEWEST_RUNS, enough: int = _ENOUGH_CALLS) -> None:
+    """Take runs until there are calls `enough`, or they have taken long enough; `at_least` so many.
 
     Raises TargetError where the size of a call could not be told.
     """
@@ -167,7 +167,7 @@ def repeat(meter: CallMeter, take: Take, *, at_least: int = _FEWEST_RUNS) -> Non
         long = clocks.wall_time_ns() - began > _SPEND_NS
         if meter.ledger.closed or not len(meter.ledger):
             return
-        if number >= at_least and (long or len(meter.ledger) >= _ENOUGH_CALLS):
+        if number >= at_least and (long or len(meter.ledger) >= enough):
             return
 
 

@@ -175,7 +175,8 @@ def _toll(recurrence: Recurrence, toll: Toll | None, excess: Interval | None) ->
     if toll is None:
         return Check(about="toll", declared=declared, found="too few sizes to tell", agrees=None)
     low, high = toll.exponent.low, toll.exponent.high
-    found = f"own work ({toll.unit}) grows as n^{toll.exponent.estimate:.2f} (95 % {low:.2f} to {high:.2f})"
+    unit = "time" if toll.unit == "ns" else toll.unit
+    found = f"own work ({unit}) grows as n^{toll.exponent.estimate:.2f} (95 % {low:.2f} to {high:.2f})"
     if toll.hidden:
         found += ", which steps do not show"
     agrees = None if excess is None else not (excess.low > TOLL_SLACK / 2 and excess.estimate > TOLL_SLACK)

@@ -95,14 +95,16 @@ def _term(part: Part, count: Fraction, power: Fraction) -> Term:
     elif part.kind == "power":
         value = _near_simple(mean, 0.03)
     else:
-        value = _ratio(mean, part.fixed)
+        value = _ratio(mean, max(_NEAR, 1 / part.at) if part.fixed else 0.0)
     return Term(count=count, count_power=power, kind=part.kind, value=value, spread=None if part.fixed else part.value)
 
 
-def _ratio(mean: float, fixed: bool) -> Fraction:
-    simple = Fraction(mean).limit_denominator(_SIMPLE)
-    if fixed and 0 < simple < 1 and abs(float(simple) - mean) <= _NEAR:
-        return simple
+def _ratio(mean: float, rounding: float) -> Fraction:
+    """The simplest fraction within `rounding` of a ratio, else a decimal."""
+    for most in range(2, _SIMPLE + 1):
+        simple = Fraction(mean).limit_denominator(most)
+        if 0 < simple < 1 and abs(float(simple) - mean) <= rounding:
+            return simple
     digits = 2 if 0.02 <= mean <= 0.98 else 3
     rounded = Fraction(round(mean * 10**digits), 10**digits)
     return min(max(rounded, Fraction(1, 1000)), Fraction(999, 1000))

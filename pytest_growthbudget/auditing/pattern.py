@@ -41,7 +41,8 @@ class Part:
 
     `share`: how many of them a dividing call has on average. `value`: the ratio, the difference, the power or the
     constant size, by `kind`. `fixed`: whether it is the same for (nearly) every call, but for rounding.
-    `ratio`: child's size over parent's, whatever the kind.
+    `ratio`: child's size over parent's, whatever the kind. `at`: the size of the largest parents, which tells how
+    much of a ratio is rounding.
     """
 
     kind: Kind
@@ -49,6 +50,7 @@ class Part:
     value: Spread
     fixed: bool
     ratio: Spread
+    at: float
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -211,7 +213,7 @@ def _part(n: Floats, s: Floats, share: float, smallest: float) -> Part:
         middle = float(np.median(s[top] / n[top]))
         fixed = bool(np.mean(np.abs(s - middle * n) <= _ROUNDING) > 0.9)
         value = Spread(mean=middle, low=middle, high=middle) if fixed else ratio
-    return Part(kind=kind, share=share, value=value, fixed=fixed, ratio=ratio)
+    return Part(kind=kind, share=share, value=value, fixed=fixed, ratio=ratio, at=float(np.quantile(n, 0.9)))
 
 
 def _kind(n: Floats, s: Floats, smallest: float) -> tuple[Kind, float]:

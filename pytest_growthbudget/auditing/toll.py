@@ -96,12 +96,15 @@ def hidden_toll(steps: Work, time: Work, confidence: float = 0.95) -> tuple[Toll
     Work inside C functions (slices, `in`, `pop(0)`, arrays) is part of a step, whatever it takes. Time a step also
     grows a little where calls are rare or leave the caches, so it must at least double and go on growing at the top.
     """
-    if len(steps) < FEWEST_SIZES or len(time) < FEWEST_SIZES:
+    growth = excess_over(steps, lambda n: 0.0)
+    if growth is None or len(time) < FEWEST_SIZES:
         return None
     known, told = np.log(steps.sizes), np.log(steps.work)
+    exponent = growth.estimate
 
     def log_steps(n: float) -> float:
-        return float(np.interp(math.log(n), known, told))
+        beyond = max(math.log(n) - known[-1], 0.0)
+        return float(np.interp(math.log(n), known, told)) + exponent * beyond
 
     rate = time.work / np.exp([log_steps(n) for n in time.sizes])
     if rate[-1] < _MATERIAL * rate.min():

@@ -31,3 +31,22 @@ def to_wire(audit: Audit) -> dict[str, Any]:
         }
     )
     return wire
+
+
+def not_made(function: str, reason: str) -> dict[str, Any]:
+    """The wire form of an audit that could not be made."""
+    return {
+        "function": function,
+        "declared": "",
+        "theta": "",
+        "calls": 0,
+        "observed": None,
+        "implies": None,
+        "theorem": "",
+        "unsolved": "",
+        "relation": "",
+        "checks": [],
+        "toll": None,
+        "pattern": None,
+        "notes": [reason],
+    }

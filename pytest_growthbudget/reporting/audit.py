@@ -53,8 +53,10 @@ def _broken(audit: dict[str, Any]) -> list[dict[str, Any]]:
 def _consequence(audit: dict[str, Any]) -> str:
     if audit["relation"] == "faster":
         return f"not as declared, which leads to {audit['implies']}"
-    if audit["relation"] in ("same", "slower"):
-        return f"not as declared, though {audit['implies']} is kept"
+    if audit["relation"] == "same":
+        return f"not as declared, though the growth is: {audit['implies']}"
+    if audit["relation"] == "slower":
+        return f"not as declared, though {audit['implies']} grows no faster"
     return "not as declared"
 
 

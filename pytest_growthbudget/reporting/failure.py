@@ -6,7 +6,7 @@ import math
 import textwrap
 from typing import Any
 
-from pytest_growthbudget.reporting import risen, units
+from pytest_growthbudget.reporting import audit, risen, units
 
 WIDTH = 80
 BAR = 24
@@ -62,6 +62,7 @@ def _observed(judgement: dict[str, Any]) -> str:
 def sections(judgements: list[dict[str, Any]], failed_at: str) -> list[tuple[str, str]]:
     """Titled texts for the report of one test: a judgement each, or the sizes at which the test failed."""
     titled = [("growth budget", describe(judgement)) for judgement in judgements]
+    titled += [("audit", audit.describe(judgement["audit"])) for judgement in judgements if judgement.get("audit")]
     if failed_at:
         titled.append(("growth budget", f"the test failed at {failed_at}; no budget was judged"))
     return titled
@@ -213,6 +214,8 @@ def _closing(judgement: dict[str, Any]) -> str:
 def _hint(judgement: dict[str, Any]) -> str:
     if _over_ceiling(judgement):
         return "the constant factor: the growth is kept, but each step is too dear for that size"
+    if judgement.get("audit") and audit.blame(judgement["audit"]):
+        return audit.blame(judgement["audit"])
     excess = judgement["excess"]["estimate"] if judgement["excess"] else 0.0
     if excess > 3:
         return "a step that branches into several of nearly its own size, or the same subproblem solved again"
