@@ -94,7 +94,8 @@ class Shelf:
         largest: int = 2_000_000,
     ) -> Callable[[Body], Body]:
         """Decorates a body; `growth` says in other words (a recurrence) what `kind` says. The tag `counted` says that
-        the lines executed grow as the cost does.
+        the lines executed grow as the cost does, and that a log factor shows: over sizes near 10^9 its share of the
+        exponent, 1 / ln n, is below any slack.
         """
 
         marks = frozenset(tags.split())

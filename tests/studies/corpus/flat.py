@@ -288,7 +288,7 @@ def prime_near(n: int, rng: random.Random) -> Arguments:
     return (m,)
 
 
-@shelf.add(ROOT, prime_near, expected=lambda m: True, smallest=1000, largest=10**11, reusable=True, tags="counted")
+@shelf.add(ROOT, prime_near, expected=lambda m: True, smallest=1000, largest=10**11, reusable=True)
 def prime_by_trial_division(m: int) -> bool:
     divisor = 2
     while divisor * divisor <= m:
@@ -305,7 +305,6 @@ def prime_by_trial_division(m: int) -> bool:
     largest=10**11,
     reusable=True,
     expected=lambda n: sum(d for d in range(1, n + 1) if n % d == 0),
-    tags="counted",
 )
 def sum_of_divisors(n: int) -> int:
     total = 0
@@ -379,7 +378,6 @@ def jump_search_10_queries(values: list[float], queries: list[float]) -> list[in
     largest=10**11,
     reusable=True,
     expected=lambda n: (math.isqrt(8 * n + 1) - 1) // 2,
-    tags="counted",
 )
 def row_of_triangle(n: int) -> int:
     row, left = 0, n
