@@ -14,106 +14,29 @@ Where usage disagrees about a spelling and the readings differ in growth, it is 
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from fractions import Fraction
 from itertools import pairwise
 from typing import NoReturn
 
 from pytest_growthbudget.bounds import names
 from pytest_growthbudget.bounds.language import BoundError, Token, number_value
+from pytest_growthbudget.bounds.tree import (
+    Apply,
+    Call,
+    Factorial,
+    Name,
+    Node,
+    Num,
+    Power,
+    Product,
+    RootOf,
+    Sum,
+)
 
 MAX_DEPTH = 30
 MAX_ITEMS = 200
 
 
-@dataclass(frozen=True, slots=True)
-class Num:
-    value: Fraction
-    start: int
-    end: int
-    recursive: bool = False
-
-
-@dataclass(frozen=True, slots=True)
-class Name:
-    name: str
-    start: int
-    end: int
-    recursive: bool = False
-
-
-@dataclass(frozen=True, slots=True)
-class Sum:
-    """`items`: (sign +1 or -1, node)."""
-
-    items: tuple[tuple[int, Node], ...]
-    start: int
-    end: int
-    recursive: bool
-
-
-@dataclass(frozen=True, slots=True)
-class Product:
-    """`items`: ("*", "/" or "//", node), read from left to right; the first one's sign is "*"."""
-
-    items: tuple[tuple[str, Node], ...]
-    start: int
-    end: int
-    recursive: bool
-
-
-@dataclass(frozen=True, slots=True)
-class Power:
-    base: Node
-    exponent: Node
-    start: int
-    end: int
-    recursive: bool
-
-
-@dataclass(frozen=True, slots=True)
-class Factorial:
-    argument: Node
-    start: int
-    end: int
-    recursive: bool
-
-
-@dataclass(frozen=True, slots=True)
-class Apply:
-    """A known function. `bare`: its argument stands without brackets."""
-
-    function: str
-    arguments: tuple[Node, ...]
-    start: int
-    end: int
-    recursive: bool
-    bare: bool = False
-
-
-@dataclass(frozen=True, slots=True)
-class Call:
-    """A call of the recurrence's own function."""
-
-    argument: Node
-    start: int
-    end: int
-    recursive: bool = True
-
-
-@dataclass(frozen=True, slots=True)
-class RootOf:
-    """`unknown` is "p" (an exponent) or "x" (a base); `left` = `right` defines it."""
-
-    unknown: str
-    left: Node
-    right: Node
-    start: int
-    end: int
-    recursive: bool = False
-
-
-Node = Num | Name | Sum | Product | Power | Factorial | Apply | Call | RootOf
 _STARTS = ("number", "name", "(", "sqrt", "⌈", "⌊", "{", "|")
 
 
@@ -330,7 +253,7 @@ class Parser:
             if token.kind == "+":
                 return inner
             return Sum(((-1, inner),), token.start, inner.end, inner.recursive)
-        if token.kind == "{" and self.tokens[self.at + 2].kind != ":":
+        if token.kind == "{" and ":" not in [t.kind for t in self.tokens[self.at + 1 : self.at + 3]]:
             node, closed = self.bracket("}")
             return Sum(((1, node),), token.start, closed.end, node.recursive)
         node = self.primary()

@@ -21,7 +21,10 @@ from pytest_growthbudget.bounds.exact import (
     power_number,
     symbol,
 )
-from pytest_growthbudget.bounds.grammar import (
+from pytest_growthbudget.bounds.growth import Growth, Monomial, dominant
+from pytest_growthbudget.bounds.language import BoundError
+from pytest_growthbudget.bounds.roots import solve
+from pytest_growthbudget.bounds.tree import (
     Apply,
     Call,
     Factorial,
@@ -33,9 +36,6 @@ from pytest_growthbudget.bounds.grammar import (
     RootOf,
     Sum,
 )
-from pytest_growthbudget.bounds.growth import Growth, Monomial, dominant
-from pytest_growthbudget.bounds.language import BoundError
-from pytest_growthbudget.bounds.roots import solve
 from pytest_growthbudget.bounds.value import Outside, Value
 
 _LN2 = 0.6931471805599453

@@ -9,7 +9,6 @@ from fractions import Fraction
 from pytest_growthbudget.bounds import value as v
 from pytest_growthbudget.bounds.enclosure import compare_numbers, sign
 from pytest_growthbudget.bounds.exact import ONE, ZERO, Number, depends_on
-from pytest_growthbudget.bounds.grammar import Call
 from pytest_growthbudget.bounds.growth import (
     CONSTANT,
     Factor,
@@ -19,6 +18,7 @@ from pytest_growthbudget.bounds.growth import (
     monomial,
 )
 from pytest_growthbudget.bounds.meaning import Meaning
+from pytest_growthbudget.bounds.tree import Call
 from pytest_growthbudget.bounds.value import Outside, Value
 
 

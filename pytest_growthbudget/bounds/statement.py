@@ -10,11 +10,12 @@ from pytest_growthbudget.bounds import names
 from pytest_growthbudget.bounds import value as v
 from pytest_growthbudget.bounds.enclosure import sign
 from pytest_growthbudget.bounds.exact import common_measure, depends_on
-from pytest_growthbudget.bounds.grammar import Call, Node, Parser
+from pytest_growthbudget.bounds.grammar import Parser
 from pytest_growthbudget.bounds.growth import CONSTANT, Factor, Growth
 from pytest_growthbudget.bounds.language import BoundError, Token, number_value, tokenize
 from pytest_growthbudget.bounds.meaning import Meaning
 from pytest_growthbudget.bounds.recurrence import Argument, Decrease, Recurrence, Term, read_term
+from pytest_growthbudget.bounds.tree import Call, Node
 from pytest_growthbudget.bounds.value import Outside, Value
 
 _OPEN = {"(": 1, "{": 1, "⌈": 1, "⌊": 1, ")": -1, "}": -1, "⌉": -1, "⌋": -1}

@@ -295,10 +295,16 @@ def exp(value: Value) -> Value:
     out: Monomial = ()
     factor: Number = ONE
     inexact = False
+    # What tends to 0 in the exponent is kept as a relative error: (1 + 1/n)^n is not 1.
+    vanishing: list[Monomial] = []
     for e in value.errors:
-        if compare_monomials(e, ()) not in (-1, 0):
+        side = compare_monomials(e, ())
+        if side == -1:
+            vanishing.append(e)
+        elif side == 0:
+            inexact = True
+        else:
             raise Outside("an exponent has to be known exactly, up to a constant")
-        inexact = True
     for m, c in value.terms.items():
         if m == ():
             if depends_on(c, ("base", "some")):
@@ -307,6 +313,7 @@ def exp(value: Value) -> Value:
                 factor = exp_number(c)
             continue
         if compare_monomials(m, ()) == -1:
+            vanishing.append(m)
             continue
         if depends_on(c, ("base",)):
             raise Outside("the base of a logarithm in an exponent decides: write log2, ln or log(n, 10)")
@@ -326,7 +333,7 @@ def exp(value: Value) -> Value:
             out = multiply(out, monomial({name: Factor(log=c)}))
         else:
             raise Outside("this exponent takes the growth outside the class c^n n^p log^q n log log^r n n!^s")
-    return Value({out: unknown() if inexact else factor})
+    return Value({out: unknown() if inexact else factor}, tuple(multiply(out, m) for m in _maximal(vanishing)))
 
 
 def factorial(value: Value) -> Value:
