@@ -41,7 +41,9 @@ class Limits:
     `floor`: the smallest reading that the meter can be trusted with; for a meter that is no clock, the cost below
     which fixed parts drown the growing ones. `repeatable`: the body may be called many
     times in one reading. `clock`: the meter reads time, so dear calls are read less often; a deterministic meter
-    is read once a size and climbs until a reading takes `dear` of wall time.
+    is read once a size and climbs until a reading takes `dear` of wall time. `per_size`, `per_size_elapsed`: how
+    long the readings of one size may take in one set, in the body and with its fixtures, as far as that leaves
+    `fewest` readings; `most` is never passed.
     """
 
     time: float = 10_000 * MS
@@ -55,6 +57,7 @@ class Limits:
     batch: float = 20_000.0
     dear: float = 30 * MS
     per_size: float = 8 * MS
+    per_size_elapsed: float = 40 * MS
     fewest: int = 5
     most: int = 25
     once: int = 1
@@ -127,7 +130,7 @@ class Campaign:
     def _climb(self, request: Climb) -> Ladder:
         while not self._ended and self._wants_more(request):
             self._step_up()
-        if self.limits.clock and not self._refined and self._rungs:
+        if not self._refined and self._rungs:
             self._refine()
         return self._ladder()
 
@@ -169,10 +172,12 @@ class Campaign:
             return True
         top = self._rungs[-1]
         growth = self._trend(lambda rung: rung.elapsed)
-        predicted = top.elapsed * (size / top.size) ** growth
+        # Elapsed times of short readings are noisy, and so is their trend; a step of the climb has its own bound.
+        predicted = top.elapsed * min((size / top.size) ** growth, sizing.RISK)
         # The climb must leave time for one set of readings at every size.
         one_round = predicted + sum(rung.elapsed for rung in self._rungs)
-        if (2 + self.limits.fewest) * one_round > self.left:
+        rounds = self.limits.fewest if self.limits.clock else self.limits.once
+        if (2 + rounds) * one_round > self.left:
             self._ended = "time"
             return False
         if self._bytes_at(size) > self.limits.memory:
@@ -234,7 +239,7 @@ class Campaign:
             return
         growth = max(self._trend(lambda rung: rung.cost), 0.1)
         more = math.log(max(self.limits.dear / usable[-1].cost, 1.0)) / (growth * math.log(self._step))
-        if len(usable) + (more if not self._ended else 0) >= 12:
+        if len(usable) + (more if self.limits.clock and not self._ended else 0) >= 12:
             return
         self._step = math.sqrt(self._step)
         known = [rung.size for rung in usable]
@@ -318,7 +323,10 @@ class Campaign:
         limits = self.limits
         if not limits.clock:
             return limits.once
-        return int(min(max(limits.per_size / max(rung.cost * rung.calls, 1.0), limits.fewest), limits.most))
+        affordable = min(
+            limits.per_size / max(rung.cost * rung.calls, 1.0), limits.per_size_elapsed / max(rung.elapsed, 1.0)
+        )
+        return int(min(max(affordable, limits.fewest), limits.most))
 
     # ------------------------------------------------------------ look-ahead
 
