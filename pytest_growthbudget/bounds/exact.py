@@ -353,8 +353,18 @@ def power_number(x: Number, exponent: Number) -> Number:
 def is_large(x: Number, bits: int) -> bool:
     """Whether some integer in x is longer than so many bits."""
     if isinstance(x, Real):
-        return any(is_large(c, bits) for poly in (x.num, x.den) for c in poly.values())
+        return any(
+            is_large(c, bits) or any(is_large(e, bits) or _is_large_symbol(s, bits) for s, e in mono)
+            for poly in (x.num, x.den)
+            for mono, c in poly.items()
+        )
     return x.numerator.bit_length() > bits or x.denominator.bit_length() > bits
+
+
+def _is_large_symbol(sym: Symbol, bits: int) -> bool:
+    if sym.kind in ("ln", "rad"):
+        return bool(sym.payload.bit_length() > bits)
+    return sym.kind in ("lnof", "exp") and is_large(sym.payload, bits)
 
 
 def common_measure(weights: Iterable[Fraction]) -> Fraction:

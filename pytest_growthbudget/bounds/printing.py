@@ -45,10 +45,11 @@ def _show_symbol(sym: Symbol) -> str:
 
 
 def show_root(equation: Equation) -> str:
-    """`{p: …}` for a critical exponent, `ln({x: …})` for the logarithm of a characteristic root."""
+    """`{p: …}` for a critical exponent, `ln(…)` of a characteristic root: a surd, or `{x: …}`."""
     weights = [w for _, w in equation.terms]
     if all(isinstance(w, Fraction) for w in weights):
-        return f"ln({_show_characteristic(equation)})"
+        base = _show_characteristic(equation)
+        return f"ln{base}" if base.startswith("(") else f"ln({base})"
     parts = []
     for a, w in equation.terms:
         ratio = exp_number(-w)
@@ -60,6 +61,9 @@ def show_root(equation: Equation) -> str:
 def _show_characteristic(equation: Equation) -> str:
     terms = [(a, int(w)) for a, w in equation.terms]  # type: ignore[arg-type]
     degree = max(k for _, k in terms)
+    if [k for _, k in terms] == [1, 2] and all(a.denominator == 1 for a, _ in terms):
+        (u, _), (v, _) = terms
+        return f"(({u} + sqrt({u * u + 4 * v}))/2)"
     parts = []
     for a, k in sorted(terms, key=lambda t: t[1]):
         coefficient = "" if a == 1 else f"{_wrapped(show_fraction(a))}*"
@@ -83,7 +87,8 @@ def _show_mono(mono: Mono, coefficient: Fraction) -> str:
     for sym, exponent in mono:
         text = _show_symbol(sym)
         size = abs(exponent)
-        (top if exponent > 0 else bottom).append(text if size == 1 else f"{text}^({show_fraction(size)})")
+        shown = text if size == 1 else f"sqrt({text})" if 2 * size == 1 else f"{text}^({show_fraction(size)})"
+        (top if exponent > 0 else bottom).append(shown)
     head = "*".join(top) or "1"
     if not bottom:
         return head

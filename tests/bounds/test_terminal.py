@@ -46,7 +46,7 @@ def test_explain_lines(monkeypatch: pytest.MonkeyPatch) -> None:
     assert answers[2]["error"]["position"] == 0
     assert answers[4]["error"]["position"] == 9
     assert answers[4]["input"] == "T(n) = T(2n)"
-    assert [a.get("theta") for a in answers[5:]] == ["n", "2^n", "{x: x^2 = x + 1}^n"]
+    assert [a.get("theta") for a in answers[5:]] == ["n", "2^n", "((1 + sqrt(5))/2)^n"]
 
 
 @pytest.mark.parametrize(
