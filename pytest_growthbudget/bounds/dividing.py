@@ -25,10 +25,11 @@ from pytest_growthbudget.bounds.derivation import (
     toll_text,
 )
 from pytest_growthbudget.bounds.enclosure import compare_numbers, sign, to_float
-from pytest_growthbudget.bounds.exact import ONE, Number, depends_on, exp_number, ln_number
+from pytest_growthbudget.bounds.exact import ONE, Number, depends_on, exp_number
 from pytest_growthbudget.bounds.growth import CONSTANT, Factor
 from pytest_growthbudget.bounds.printing import show_number
 from pytest_growthbudget.bounds.recurrence import Decrease, Ratio, Recurrence, Shrink, Term
+from pytest_growthbudget.bounds.roots import ln_with_surds
 
 
 def dividing(rec: Recurrence) -> Derivation | None:
@@ -42,7 +43,7 @@ def dividing(rec: Recurrence) -> Derivation | None:
     if superpolynomial(rec.toll):
         raise Unsolved("an exponential toll beside exponential coefficients is not solved")
     v = rec.variable
-    pairs: list[tuple[Number, Number]] = [(known(t), -ln_number(ratio(t))) for t in main]
+    pairs: list[tuple[Number, Number]] = [(known(t), -ln_with_surds(ratio(t))) for t in main]
     toll = rec.toll
     regular = toll is not None and not toll.rate and not toll.factorial
     p, relation = critical(pairs, toll.power if regular and toll is not None else None)
@@ -87,7 +88,7 @@ def critical(pairs: list[tuple[Number, Number]], power: Number | None) -> tuple[
     """p, and the sign of (toll's exponent - p)."""
     if len(pairs) == 1:
         a, w = pairs[0]
-        p = ln_number(a) / w
+        p = ln_with_surds(a) / w
     else:
         rational = [(a, w) for a, w in pairs if isinstance(a, Fraction)]
         if len(rational) < len(pairs):
@@ -121,7 +122,7 @@ def _split_steps(rec: Recurrence, main: list[Term], p: Number) -> list[str]:
     factors = [ratio(t) for t in main]
     if len(factors) > 1 and any(compare_numbers(f, factors[0]) for f in factors[1:]):
         largest = max(factors, key=to_float)
-        depth = -0.6931471805599453 / to_float(ln_number(largest))
+        depth = -0.6931471805599453 / to_float(ln_with_surds(largest))
         steps.append(f"uneven split: the deepest branch is about {depth:.3g} log2 {v} calls long")
     return steps
 

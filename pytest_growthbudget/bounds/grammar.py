@@ -19,7 +19,8 @@ from itertools import pairwise
 from typing import NoReturn
 
 from pytest_growthbudget.bounds import names
-from pytest_growthbudget.bounds.language import BoundError, Token, number_value
+from pytest_growthbudget.bounds.doubts import Doubts
+from pytest_growthbudget.bounds.language import Token, number_value
 from pytest_growthbudget.bounds.tree import (
     Apply,
     Call,
@@ -40,7 +41,7 @@ MAX_ITEMS = 200
 _STARTS = ("number", "name", "(", "sqrt", "⌈", "⌊", "{", "|")
 
 
-class Parser:
+class Parser(Doubts):
     """One pass over the tokens; one method a rule. `function` is the recurrence's name, "" in a bound."""
 
     def __init__(self, text: str, tokens: list[Token], function: str = "") -> None:
@@ -52,16 +53,6 @@ class Parser:
         self.unknown = ""
         self.sizes: set[str] = set()
         self.plain = {t.value for t, after in pairwise(tokens) if t.kind == "name" and after.kind != "("}
-
-    @property
-    def token(self) -> Token:
-        return self.tokens[self.at]
-
-    def fault(self, message: str, start: int, end: int | None = None, hint: str = "") -> BoundError:
-        return BoundError(message, self.text, start, end, hint)
-
-    def fail(self, message: str, start: int, end: int | None = None, hint: str = "") -> NoReturn:
-        raise self.fault(message, start, end, hint)
 
     def take(self) -> Token:
         token = self.tokens[self.at]
@@ -135,86 +126,6 @@ class Parser:
         if len(items) > MAX_ITEMS:
             self.fail(f"a product of {len(items)} parts is too long", first.start)
         return Product(tuple(items), first.start, self.tokens[self.at - 1].end, any(n.recursive for _, n in items))
-
-    def _check_fraction(self, left: Node, sign: Token, right: Node) -> None:
-        """Refuses `n^1/2`, where n^(1/2) may be meant; `n^2/2` and `n^2/n` leave no doubt."""
-        if not (isinstance(left, Power) and left.end == sign.start and sign.end == right.start):
-            return
-        if self.text[left.end - 1] == ")":
-            return
-        exponent = left.exponent
-        if isinstance(right, Num) and isinstance(exponent, Num) and right.value.denominator == 1:
-            value = exponent.value
-            reduced = value.denominator == 1 and Fraction(value, right.value).denominator == right.value
-            doubtful = right.value > 1 and (reduced or value.denominator != 1)
-        else:
-            doubtful = isinstance(right, Num) and right.value != 1 and not isinstance(exponent, Num)
-        if doubtful:
-            base, whole = self.text[left.start : left.end], self.text[left.start : right.end]
-            over = self.text[right.start : right.end]
-            inner = self.text[exponent.start : exponent.end]
-            outer = self.text[left.start : left.base.end]
-            self.fail(
-                f"{whole!r} can mean ({base})/{over} or {outer}^({inner}/{over})",
-                left.start,
-                right.end,
-                f"write {outer}^({inner}/{over}) or ({base})/{over}",
-            )
-
-    def _is_call(self, token: Token) -> bool:
-        return bool(self.function) and token.kind == "name" and token.value == self.function
-
-    def _check_juxtaposition(self, items: list[tuple[str, Node]]) -> None:
-        """Refuses products without a sign that can be read in two ways."""
-        sign, last = items[-1]
-        token = self.token
-        close = last.end == token.start
-        call = self._is_call(token)
-        if sign in ("/", "//") and not call:
-            self.fail(
-                "it is not clear whether this belongs below the fraction bar",
-                token.start,
-                token.end,
-                "write brackets, as in 1/(2 n) or (1/2) n",
-            )
-        log_next = token.kind == "name" and names.is_log(token.value)
-        if isinstance(last, Apply) and last.bare and not call and not (names.is_log(last.function) and log_next):
-            function = self.text[last.start : last.end].split()[0]
-            self.fail(
-                f"it is not clear where the argument of {function} ends",
-                last.start,
-                token.end,
-                f"write {function}(…) with brackets around the argument",
-            )
-        if isinstance(last, Power) and self.text[last.end - 1] not in ")}":
-            exponent = last.exponent
-            if isinstance(exponent, Apply) and exponent.bare and not call:
-                self.fail("it is not clear where this exponent ends", exponent.start, token.end, "write brackets")
-            constant = isinstance(last.base, Num)
-            if close and not call and (constant or not log_next):
-                whole = self.text[last.start : token.end]
-                self.fail(
-                    f"it is not clear where the exponent ends in {whole!r}",
-                    last.start,
-                    token.end,
-                    "write brackets around the exponent, or * after it",
-                )
-        if token.kind == "number":
-            following = self.tokens[self.at + 1].kind
-            if isinstance(last, Num) or following not in ("^", "power"):
-                self.fail(
-                    "a number after another factor needs a sign between them",
-                    token.start,
-                    token.end,
-                    "write * for a product, ^ for a power",
-                )
-        if isinstance(last, Name) and token.kind == "(" and last.name not in self.plain:
-            self.fail(
-                f"unknown function {last.name!r}",
-                last.start,
-                last.end,
-                f"known are {names.KNOWN}; a product with a size is written {last.name} * (…)",
-            )
 
     def power(self) -> Node:
         base = self.postfix()

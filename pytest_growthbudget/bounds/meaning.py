@@ -16,14 +16,13 @@ from pytest_growthbudget.bounds.exact import (
     Undecidable,
     depends_on,
     ln_fraction,
-    ln_number,
     make,
     power_number,
     symbol,
 )
 from pytest_growthbudget.bounds.growth import Growth, Monomial, dominant
 from pytest_growthbudget.bounds.language import BoundError
-from pytest_growthbudget.bounds.roots import solve
+from pytest_growthbudget.bounds.roots import ln_with_surds, solve
 from pytest_growthbudget.bounds.tree import (
     Apply,
     Call,
@@ -163,7 +162,7 @@ class Meaning:
                 self.fail("the base of a logarithm must be a number", node.arguments[1])
             if sign(base - 1) <= 0:
                 self.fail("the base of a logarithm must be above 1", node.arguments[1])
-            return ONE / ln_number(base)
+            return ONE / ln_with_surds(base)
         if function == "log":
             return symbol(BASE)
         digits = int(function[3:])
@@ -193,7 +192,7 @@ class Meaning:
             ratio = self.of(part.base).constant()
             if ratio is None or coefficient <= 0 or sign(ratio) <= 0 or sign(ratio - 1) >= 0:
                 self.fail("expected a positive coefficient and a ratio between 0 and 1", item)
-            terms.append((coefficient, -ln_number(ratio)))
+            terms.append((coefficient, -ln_with_surds(ratio)))
         return solve(terms)
 
     def _base_root(self, node: RootOf) -> Number:

@@ -16,10 +16,11 @@ from pytest_growthbudget.bounds.derivation import (
 )
 from pytest_growthbudget.bounds.dividing import critical
 from pytest_growthbudget.bounds.enclosure import compare_numbers, sign
-from pytest_growthbudget.bounds.exact import ONE, ZERO, Number, ln_number
+from pytest_growthbudget.bounds.exact import ONE, ZERO, Number
 from pytest_growthbudget.bounds.growth import Factor
 from pytest_growthbudget.bounds.printing import show_number
 from pytest_growthbudget.bounds.recurrence import Recurrence, Root, Term
+from pytest_growthbudget.bounds.roots import ln_with_surds
 
 
 def rooting(rec: Recurrence) -> Derivation | None:
@@ -50,7 +51,7 @@ def rooting(rec: Recurrence) -> Derivation | None:
         if here and not root(term).plain:
             raise Unsolved("a power as coefficient beside a root with a factor is not solved")
         delta = here
-        pairs.append((known(term), -ln_number(theta)))
+        pairs.append((known(term), -ln_with_surds(theta)))
     shift = Factor(power=delta or ZERO)
     steps = [f"substitute m = log {v}: a root of {v} becomes a fraction of m"]
     if delta:
