@@ -37,6 +37,8 @@ def held(
     facts = drift.against(record, judgement, environment(), ratchet.margin)
     if facts["risen"] and judgement["verdict"] != "exceeded":
         second = drift.against(record, again(), environment(), ratchet.margin)
-        if not second["risen"]:
+        if second["risen"]:
+            facts.update(why="a second measurement agrees")
+        else:
             facts.update(risen=False, why="a second measurement did not agree")
     return {**judgement, "drift": facts}

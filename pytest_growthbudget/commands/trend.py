@@ -109,4 +109,7 @@ def _row(step: Step, trend: Trend) -> list[str]:
 
 
 def _growth(value: Interval | None) -> str:
-    return "" if value is None else f"{value['estimate']:.2f} ({value['low']:.2f} to {value['high']:.2f})"
+    if value is None:
+        return ""
+    ends = [f"{value[end]:.2f}".replace("-0.00", "0.00") for end in ("estimate", "low", "high")]
+    return f"{ends[0]} ({ends[1]} to {ends[2]})"

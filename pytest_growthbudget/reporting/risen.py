@@ -35,8 +35,10 @@ def fact(judgement: Mapping[str, Any]) -> str:
         over = f" over {judgement['variable']} = {low:,.0f} to {high:,.0f}"
     said = f"{drift['of']} {_interval(drift['now'])}{over}; accepted on {drift['since'][:10]}: "
     said += _interval(drift["accepted"])
+    if drift["why"]:
+        said += f"; {drift['why']}"
     if drift["risen"]:
-        said += "; a second measurement agrees. If this is meant: python -m pytest_growthbudget accept RECORDS"
+        said += ". If this is meant: python -m pytest_growthbudget accept RECORDS"
     return said
 
 
