@@ -5,7 +5,7 @@ from __future__ import annotations
 import contextlib
 import copy
 from collections.abc import Callable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from types import CodeType
 from typing import Any, Final
 
@@ -15,7 +15,7 @@ from pytest_growthbudget.auditing.compare import Check
 from pytest_growthbudget.auditing.observed import Observed, observe_terms, observed
 from pytest_growthbudget.auditing.pattern import Pattern, pattern
 from pytest_growthbudget.auditing.target import Sizer, Target, TargetError, inner, resolve, sizer
-from pytest_growthbudget.auditing.toll import Toll, Work, excess_over, hidden_toll, toll_of, work_by_size
+from pytest_growthbudget.auditing.toll import Toll, Work, excess_over, hidden_toll, is_flat, toll_of, work_by_size
 from pytest_growthbudget.auditing.watching import CallMeter
 from pytest_growthbudget.bounds.budget import Budget, parse_budget
 from pytest_growthbudget.meters import clocks
@@ -180,6 +180,8 @@ def assess(
     variable = budget.variables[0] if budget is not None and budget.variables else "n"
     work, toll = _toll_and_work(calls, steps.counts_steps, timed)
     excess = None
+    if toll is not None and work is not None and work.unit == "ns" and not toll.hidden and is_flat(work):
+        work, toll = None, replace(toll, nearest="1")
     if work is not None and budget is not None and budget.recurrence is not None:
         growth = compare.toll_growth(budget.recurrence.toll)
         excess = excess_over(work, growth.log_value)
@@ -253,7 +255,7 @@ def _notes(
             "Another tool holds the trace function, so own work was read by the clock, which that tool slows down."
         )
     if seen is None:
-        notes.append(f"{target.name} made no call of itself that was seen to its end.")
+        notes.append(f"{target.name} makes no calls of itself.")
     elif seen.growing > _GROWING:
         notes.append(
             f"In {100 * seen.growing:.0f} % of the calls a subproblem is no smaller than its parent: what size_of "

@@ -33,6 +33,10 @@ class _Counter(StepWatch):
         assert self._tally is not None
         return self._tally.read()
 
+    def hush(self) -> None:
+        """Count no more; `end` may still be called."""
+        self._watch.end()
+
 
 class CallWatch:
     """Writes the calls of `target` to `ledger` between `begin` and `end`; with `count`, own work is in steps."""
@@ -92,6 +96,7 @@ class CallWatch:
 
     def _start(self, code: CodeType, offset: int) -> object:
         if self._ledger.closed:
+            self._steps.hush()
             return _monitoring.DISABLE
         if self._elsewhere():
             return None

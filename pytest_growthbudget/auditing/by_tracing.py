@@ -50,6 +50,8 @@ class CallWatch:
         if hook is None:
             return
         held = sys.getprofile() if self._profiles else sys.gettrace()
+        if held is None and self._ledger.closed:
+            return
         if held != hook:
             raise MeterError(
                 "the code replaced the trace or profile function while it was audited, so calls are missing. "
@@ -86,6 +88,9 @@ class CallWatch:
         def new(frame: FrameType, event: str, arg: Any) -> Any:
             if frame.f_code is not code:
                 return None
+            if self._ledger.closed:
+                sys.settrace(None)
+                return None
             frame.f_trace_lines = False
             self._enter(frame)
             return local
@@ -113,6 +118,7 @@ class CallWatch:
             nonlocal steps
             if frame.f_code is code:
                 if ledger.closed:
+                    sys.settrace(None)
                     return None
                 self._enter(frame)
                 steps += 1

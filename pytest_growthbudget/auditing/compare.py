@@ -94,7 +94,10 @@ def _subproblems(recurrence: Recurrence, pattern: Pattern, found: Observed) -> C
     growing = any(term.count_power for term in found.terms)
     seen = sum((float(term.count) for term in found.terms), 0.0)
     text = " + ".join(term.text for term in found.terms) if growing else f"{seen:.3g}"
-    if not growing and pattern.count.low != pattern.count.high:
+    steady = sum(part.share for part in pattern.parts if part.kind == "constant")
+    if steady >= 0.5:
+        text += f" that grows with {recurrence.variable}, beside {steady:.3g} of a constant size"
+    elif not growing and pattern.count.low != pattern.count.high:
         text += f" on average ({pattern.count.low:g} to {pattern.count.high:g} in 90 % of calls)"
     if not fixed:
         # A coefficient that grows with n is compared by the growth it leads to alone.
@@ -141,7 +144,9 @@ def _paired(terms: tuple[Term, ...], slots: list[_Slot]) -> Iterator[tuple[Term,
     place, told = 0, set()
     for term in terms:
         for _ in range(max(1, round(float(term.count)))):
-            slot = slots[min(place, len(slots) - 1)]
+            if place >= len(slots):
+                return
+            slot = slots[place]
             place += 1
             if (id(term), slot.text) not in told:
                 told.add((id(term), slot.text))
@@ -176,7 +181,8 @@ def _toll(recurrence: Recurrence, toll: Toll | None, excess: Interval | None) ->
         return Check(about="toll", declared=declared, found="too few sizes to tell", agrees=None)
     low, high = toll.exponent.low, toll.exponent.high
     unit = "time" if toll.unit == "ns" else toll.unit
-    found = f"own work ({unit}) grows as n^{toll.exponent.estimate:.2f} (95 % {low:.2f} to {high:.2f})"
+    power = f"{recurrence.variable}^{round(toll.exponent.estimate, 2) + 0.0:.2f}"
+    found = f"own work ({unit}) grows as {power} (95 % {low:.2f} to {high:.2f})"
     if toll.hidden:
         found += ", which steps do not show"
     agrees = None if excess is None else not (excess.low > TOLL_SLACK / 2 and excess.estimate > TOLL_SLACK)

@@ -16,6 +16,8 @@ _SIMPLE: Final = 12
 _NEAR: Final = 0.006
 _RARE: Final = 0.02
 _LEAST: Final = Fraction(1, 10)
+_OFTEN: Final = Fraction(9, 10)
+_NEARLY_ALL: Final = Fraction(98, 100)
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -42,7 +44,7 @@ class Term:
             return f"{n}^{_decimal(value)}" if value != Fraction(1, 2) else f"sqrt({n})"
         if value.numerator == 1:
             return f"{n}/{value.denominator}"
-        if self.spread is None and value.denominator <= 100:
+        if value.denominator <= _SIMPLE or (self.spread is None and value > _NEARLY_ALL):
             return f"{value.numerator}{n}/{value.denominator}"
         return f"{_decimal(value)} {n}"
 
@@ -82,10 +84,10 @@ def _terms(pattern: Pattern) -> tuple[Term, ...]:
     if pattern.count_power:
         power = Fraction(round(pattern.count_power * 100), 100)
         return tuple(_term(part, _factor(pattern.count_factor), power) for part in parts)
-    terms = [_term(part, _count(part.share), Fraction(0)) for part in parts]
-    if pattern.partition and len(terms) > 1 and all(term.kind == "ratio" and term.count == 1 for term in terms):
+    terms = [_term(part, Fraction(part.share), Fraction(0)) for part in parts]
+    if pattern.partition and len(terms) > 1 and all(term.kind == "ratio" and term.count > _OFTEN for term in terms):
         terms = _whole(terms)
-    return tuple(_merged(terms))
+    return tuple(replace(term, count=_count(float(term.count))) for term in _merged(terms))
 
 
 def _term(part: Part, count: Fraction, power: Fraction) -> Term:

@@ -22,9 +22,14 @@ from pytest_growthbudget.fitting.judgement import Interval
 LogGrowth = Callable[[float], float]
 
 _MATERIAL: Final = 2.0
+_COLD_NS: Final = 10_000.0
+_WIDE: Final = 8.0
 _HIDDEN: Final = 0.2
 _TOP_SIZES: Final = 6
-_WHOLE_POWERS: Final = ("1", "n", "n^2", "n^3", "n^4")
+_FLAT: Final = 0.03
+_STEEP: Final = 4.5
+_NEAR: Final = 0.6
+_WHOLE_POWERS: Final = {"1": 0, "n": 1, "n^2": 2, "n^3": 3, "n^4": 4}
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)
@@ -87,17 +92,25 @@ def toll_of(work: Work, confidence: float = 0.95) -> Toll | None:
     excess = excess_over(work, lambda n: 0.0, confidence)
     if excess is None:
         return None
-    return Toll(exponent=excess, nearest=_nearest(work), unit=work.unit, from_size=float(work.sizes[0]))
+    return Toll(
+        exponent=excess, nearest=_nearest(work, excess.estimate), unit=work.unit, from_size=float(work.sizes[0])
+    )
+
+
+def is_flat(time: Work) -> bool:
+    """Whether time grows so little that it may be what single calls cost anyway, and no exponent can be told."""
+    return bool(np.min(time.work[-2:]) < _MATERIAL * np.quantile(time.work, 0.25))
 
 
 def hidden_toll(steps: Work, time: Work, confidence: float = 0.95) -> tuple[Toll, Work] | None:
     """The growth of time at the largest sizes, with these, where time a step clearly grows; None where it does not.
 
     Work inside C functions (slices, `in`, `pop(0)`, arrays) is part of a step, whatever it takes. Time a step also
-    grows a little where calls are rare or leave the caches, so it must at least double and go on growing at the top.
+    grows a little where calls are rare or leave the caches: so it must have doubled at the two largest sizes, by more
+    than a cold call costs, and go on growing at the top.
     """
     growth = excess_over(steps, lambda n: 0.0)
-    if growth is None or len(time) < FEWEST_SIZES:
+    if growth is None or len(time) < FEWEST_SIZES or time.sizes[-1] < _WIDE * time.sizes[0]:
         return None
     known, told = np.log(steps.sizes), np.log(steps.work)
     exponent = growth.estimate
@@ -106,8 +119,9 @@ def hidden_toll(steps: Work, time: Work, confidence: float = 0.95) -> tuple[Toll
         beyond = max(math.log(n) - known[-1], 0.0)
         return float(np.interp(math.log(n), known, told)) + exponent * beyond
 
-    rate = time.work / np.exp([log_steps(n) for n in time.sizes])
-    if rate[-1] < _MATERIAL * rate.min():
+    expected = np.exp([log_steps(n) for n in time.sizes])
+    expected *= np.quantile(time.work / expected, 0.25)
+    if np.any(time.work[-2:] < _MATERIAL * expected[-2:]) or time.work[-1] - expected[-1] < _COLD_NS:
         return None
     top = _top(time)
     excess = excess_over(top, log_steps, confidence)
@@ -130,15 +144,36 @@ def excess_over(work: Work, log_growth: LogGrowth, confidence: float = 0.95) -> 
     return fit_excess(observe(work.sizes, work.work, log_growth), noise=work.noise).delta.interval(confidence)
 
 
-def _nearest(work: Work) -> str:
+def _nearest(work: Work, exponent: float) -> str:
     """The simple growth nearest to own work: a whole power where one is consistent with it, else any."""
+    base = _base(work) if exponent > _STEEP else 0.0
+    if base:
+        return f"{base:.2g}^n"
+    if exponent <= _FLAT:
+        return "1"
     fits: list[tuple[bool, float, str]] = []
     for name, log_growth in SIMPLE_GROWTHS:
         excess = excess_over(work, _from_two(log_growth))
         assert excess is not None
-        whole = name in _WHOLE_POWERS and excess.low <= 0 <= excess.high
+        # The offset of the model may make any power consistent with work that hardly grows: it must be near as well.
+        near = abs(_WHOLE_POWERS.get(name, math.inf) - max(exponent, 0.0)) < _NEAR
+        whole = near and excess.low <= 0 <= excess.high
         fits.append((not whole, abs(excess.estimate) + (0.05 if "log" in name else 0.0), name))
     return min(fits)[2]
+
+
+def _base(work: Work) -> float:
+    """The base c where c^n fits own work better than any power of n does; else 0."""
+    half = len(work) // 2
+    n, told = work.sizes[half:], np.log(work.work[half:])
+    if len(n) < 3:
+        return 0.0
+    misfits = []
+    for x in (n, np.log(n)):
+        slope, level = np.polyfit(x, told, 1)
+        misfits.append((float(np.abs(told - level - slope * x).max()), float(slope)))
+    (straight, slope), (power, _) = misfits
+    return math.exp(min(slope, 50.0)) if straight < power and slope > 0 else 0.0
 
 
 def _from_two(log_growth: LogGrowth) -> LogGrowth:

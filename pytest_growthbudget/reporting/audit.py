@@ -70,7 +70,7 @@ def _sentence(check: dict[str, Any]) -> str:
         return f"the same subproblem again and again: {check['found']}; a memo table is missing"
     declared = check["declared"]
     promised = {
-        "subproblems": f"{declared} subproblems",
+        "subproblems": f"{declared} subproblem{'' if declared == '1' else 's'}",
         "argument": f"subproblems of {declared}",
         "toll": f"toll {declared}",
     }[check["about"]]
@@ -118,7 +118,7 @@ def _facts(audit: dict[str, Any]) -> list[str]:
         lines.append(
             _fact(
                 "own work",
-                f"{unit} grow{'s' if unit == 'time' else ''} as n^{exponent['estimate']:.2f} "
+                f"{unit} grow{'s' if unit == 'time' else ''} as n^{round(exponent['estimate'], 2) + 0.0:.2f} "
                 f"(95 % {exponent['low']:.2f} to {exponent['high']:.2f}){hidden}",
             )
         )
