@@ -54,7 +54,10 @@ def forecast(
     noise: float,
     at: Sequence[int] = (),
 ) -> tuple[ForecastRow, ...]:
-    """Forecasts at the sizes `at`, or at a few larger ones, as far as the cost stays below thirty thousand years in nanoseconds."""
+    """Forecasts at the sizes `at`, or at a few beyond the largest.
+
+    A size whose cost would be more than thirty thousand years in nanoseconds is left out.
+    """
     levels = ((1 - confidence) / 2, 0.5, (1 + confidence) / 2)
     fitted, growth = seen, log_growth
     base = None if exponential else steep_base(seen)
@@ -67,7 +70,7 @@ def forecast(
         mixture = log_cost_at(fitted, lines, growth(size), growth(size) if exponential else math.log(size))
         low, middle, high = mixture.quantiles(levels)
         if middle > _GREATEST_LOG_COST:
-            break
+            continue
         cost = Interval(estimate=_exp(middle), low=_exp(low), high=_exp(high))
         rows.append(ForecastRow(size=size, cost=cost, allowed=allowed_cost(seen, log_growth, size)))
     return tuple(rows)
@@ -78,15 +81,15 @@ def _steps(log_factor: float, size: float) -> float:
 
 
 def log_cost_at(seen: Observations, lines: Lines, allowed: float, regressor: float) -> Mixture:
-    """The log of the cost expected at a larger size, given by its log growth and its regressor.
+    """The log of the cost expected at a size, given by its log growth and its regressor.
 
     The prediction of each line is that of universal kriging (Cressie 1993, "Statistics for Spatial Data", section
     3.4 [from memory]): the walk goes on from where the largest size left it, so the interval widens with the
     distance. The lines are averaged as for the excess. The white noise of a single reading is left out.
     """
     plain = lines.kind < 2
-    at = np.array([regressor])
-    ahead = float(at[0] - seen.regressor[-1])
+    ahead = float(regressor - seen.regressor[-1])
+    at = np.array([max(regressor, seen.regressor[0])])  # the walk starts at the smallest size
     one, tilt, target = lines.one[plain], lines.tilt[plain], lines.target[plain]
     level, slope, rss, det = lines.level[plain], lines.slope[plain], lines.rss[plain], lines.det[plain]
 

@@ -67,8 +67,8 @@ class Judgement(Finding):
     decision used. `seconds`: wall time of the whole measurement. `notes`: what distorted the readings, one
     sentence each. `allowed`: for each row of `sizes`, what the budget allows there, scaled to the smallest sizes.
     `variable`: the name of the size that grew. `ceiling`: the forecast that was held to a ceiling, and the ceiling.
-    `yardstick`: for each row of `sizes`, what the reference function cost. `ray`: which sizes grew, where the bound has several variables (the worst ray is the one reported); `rays`: the
-    verdict on each ray that was judged.
+    `yardstick`: for each row of `sizes`, what the reference function cost. `ray`: which sizes grew, where the bound
+    has several variables (the worst ray is the one reported); `rays`: the verdict on each ray that was judged.
     """
 
     bound: str

@@ -62,6 +62,15 @@ def test_the_interval_covers_noisy_costs() -> None:
     assert held >= 90
 
 
+def test_sizes_within_and_below_those_read_can_be_asked_for() -> None:
+    case = seen(lambda n: 7.0 * n, noise=0.03)
+    asked = forecast(case, BUDGETS["n"], exponential=False, confidence=0.95, noise=CLOCK_NOISE, at=(5, 100, 3000))
+    assert [row.size for row in asked] == [5, 100, 3000]
+    for row in asked:
+        assert row.cost.low < row.cost.high
+        assert row.cost.estimate == pytest.approx(7.0 * row.size, rel=0.2)
+
+
 def test_the_interval_widens_with_the_distance() -> None:
     widths = [row.cost.high / row.cost.low for row in rows(seen(lambda n: 7.0 * n, noise=0.05))]
     assert widths == sorted(widths)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import asdict
 
 import pytest
 
@@ -257,3 +258,28 @@ def test_a_finding_carries_what_a_report_needs() -> None:
     assert all(type(row.size) is int and type(row.cost) is float for row in found.sizes)
     assert all(row.cost.low < 20.0 * row.size**2 < row.cost.high for row in found.forecast[:1])
     assert found.forecast[-1].allowed < found.forecast[-1].cost.low
+
+
+@pytest.mark.parametrize(
+    "case",
+    [
+        Formula(lambda n: 20.0 * n * n),
+        Formula(lambda n: 100.0 * n),
+        Formula(lambda n: 20.0 * n * n, bytes_each=2e4, curve=STEEP_CURVE),
+        Formula(lambda n: 500.0 * n**1.4, bytes_each=2e4, curve=STEEP_CURVE),
+        Formula(lambda n: 60.0 * 2.0**n, sizes=tuple(range(8, 40))),
+    ],
+)
+def test_findings_are_made_of_plain_numbers(case: Formula) -> None:
+    """A numpy scalar in a report turns a failing parallel run green."""
+
+    def leaves(value: object) -> list[object]:
+        if isinstance(value, dict):
+            return [leaf for each in value.values() for leaf in leaves(each)]
+        if isinstance(value, tuple):
+            return [leaf for each in value for leaf in leaves(each)]
+        return [value]
+
+    found = leaves(asdict(case.decide(BUDGETS["n"])))
+    assert {type(leaf) for leaf in found} <= {int, float, str, bool, type(None)}
+    assert all(math.isfinite(leaf) for leaf in found if isinstance(leaf, float))
