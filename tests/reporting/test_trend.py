@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import json
 from pathlib import Path
 from typing import Any
@@ -42,13 +43,13 @@ def test_a_step_is_marked_once() -> None:
 def test_a_drift_too_slow_for_any_two_runs_is_marked() -> None:
     slow = runs([1.0 + 0.02 * day for day in range(12)], noise=0.03)
     (trend,) = trends(slow)
-    neighbours = [trends(pair)[0].changed for pair in zip(slow, slow[1:], strict=False)]
+    neighbours = [trends(pair)[0].changed for pair in itertools.pairwise(slow)]
     assert not any(neighbours)
     assert "rose" in [step.change for step in trend.steps]
 
 
 def test_a_dearer_constant_is_a_change_of_cost_alone() -> None:
-    records = runs([1.0, 1.0]) + [record(1.0, scale=300.0, run="c", time="2026-04-01T00:00:00Z", seed=9)]
+    records = [*runs([1.0, 1.0]), record(1.0, scale=300.0, run="c", time="2026-04-01T00:00:00Z", seed=9)]
     (trend,) = trends(records)
     assert [step.cost_change for step in trend.steps] == ["", "", "rose"]
     assert [step.change for step in trend.steps] == ["", "", ""]
