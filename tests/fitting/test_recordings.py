@@ -15,8 +15,10 @@ DEPARTURES = {
     "quiet2 np_pairdist against n1.5": (
         "within",
         "undecided",
-        "the check on cache-resident sizes uses the limited allowance too, not the kernels' whole multiple; "
-        "the function does break this budget",
+        (
+            "the check on cache-resident sizes uses the limited allowance too, not the kernels' whole multiple; "
+            "the function does break this budget"
+        ),
     ),
 }
 
