@@ -364,6 +364,8 @@ def is_large(x: Number, bits: int) -> bool:
 def _is_large_symbol(sym: Symbol, bits: int) -> bool:
     if sym.kind in ("ln", "rad"):
         return bool(sym.payload.bit_length() > bits)
+    if sym.kind == "root":
+        return any(is_large(a, bits) or is_large(w, bits) for a, w in sym.payload.terms)
     return sym.kind in ("lnof", "exp") and is_large(sym.payload, bits)
 
 
