@@ -11,7 +11,7 @@ from pytest_growthbudget.meters import witness
 from pytest_growthbudget.meters.protocol import Meter, checked_cost, notes_of
 from pytest_growthbudget.workloads.repeat import Repeater
 
-#: What a reading of nothing counts as, so that its logarithm exists: half of one count, or of one nanosecond.
+#: What a clock that did not move counts as, in nanoseconds, so that its logarithm exists.
 NOTHING = 0.5
 
 
@@ -32,7 +32,9 @@ class Taker:
 
     def __call__(self, size: int, calls: int) -> Reading:
         taken = self.repeater.take(size, self.meter, calls)
-        cost = max(checked_cost(self.meter, taken.cost), NOTHING)
+        cost = checked_cost(self.meter, taken.cost)
+        if not self.meter.deterministic:
+            cost = max(cost, NOTHING)
         if self.meter.name == "cpu_time":
             self._ratios.append(taken.wall / cost)
         elif self.meter.name == "wall_time":

@@ -36,6 +36,8 @@ if TYPE_CHECKING:
 #: The memory curve of this machine by its key, once it was needed: it outlives a run within one process.
 _curves: dict[str, MemoryCurve] = {}
 CURVE_CACHE = "growthbudget/memory_curve"
+#: How many workloads of one size a meter that always counts the same reads, where they are random.
+RANDOM_WORKLOADS = 3
 #: Below these costs, by unit, the fixed parts of a count drown what grows.
 FLOOR = {"bytes": 1024.0, "ns": 5_000.0}
 FEW_COUNTS = 30.0
@@ -50,6 +52,10 @@ def hold(item: GrowthItem) -> None:
         for plan in item.plans:
             try:
                 judgement = judge_plan(item, plan, forget)
+                if judgement.verdict == "exceeded":
+                    from pytest_growthbudget.hotspots import with_lines
+
+                    judgement = with_lines(item, plan, judgement, forget)
                 wire = against_accepted(item, plan, to_wire(judgement, undecided=plan.undecided), forget)
             except BodyFailed as error:
                 failure = error
@@ -161,6 +167,7 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
             exponential=promise.exponential,
             repeatable=repeater.repeatable and plan.yardstick is None,
             clock=not meter.deterministic,
+            once=RANDOM_WORKLOADS if repeater.random else 1,
             floor=FLOOR.get(meter.unit, FEW_COUNTS if meter.deterministic else FLOOR["ns"]),
         ),
         seed=f"{plan.seed}/{item.nodeid}/{plan.meter}/{ray.name}",

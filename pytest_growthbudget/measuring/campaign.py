@@ -56,10 +56,10 @@ class Limits:
     floor: float = 5_000.0
     batch: float = 20_000.0
     dear: float = 30 * MS
-    per_size: float = 8 * MS
-    per_size_elapsed: float = 40 * MS
-    fewest: int = 5
-    most: int = 25
+    per_size: float = 4 * MS
+    per_size_elapsed: float = 30 * MS
+    fewest: int = 3
+    most: int = 12
     once: int = 1
 
 

@@ -136,6 +136,8 @@ class Repeater:
         self._shared = item.config.stash[shared_key]
         self._uses_metered = "metered" in internals.direct_arguments(self._template)
         self._readings = 0
+        #: Whether workloads of one size differ.
+        self.random = "workload_rng" in internals.names_of_fixtures(self._template)
         #: Whether a call leaves the workload as it was, by the scopes of the fixtures: see `repeatable`.
         self.repeatable = repeatable(self._template, tuple(assign(2))) and not self._uses_metered
 

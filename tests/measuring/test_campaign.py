@@ -196,7 +196,7 @@ def test_the_same_seed_reads_the_same_sizes_in_the_same_order() -> None:
 
 def test_rounds_stop_at_the_time_limit_and_keep_what_was_read() -> None:
     bench = Bench(lambda n: 100.0 * n, build=lambda n: 2e4 * n)
-    (series,) = rounds(bench, Rounds(0, 99), time=1e9, cost=1 * MS)
+    (series,) = rounds(bench, Rounds(0, 99, calls=60), time=1e9, cost=1 * MS)
     assert not series.complete
     assert all(len(costs) >= 1 for costs in series.costs)
     assert bench.time <= 1e9
