@@ -47,10 +47,10 @@ def test_within_and_exceeded(told: Told, tmp_path: Path) -> None:
     (tmp_path / "c.csv").write_text(costs(2))
     code, out, err = told("c.csv", "--bound", "n^2")
     assert (code, err) == (0, "")
-    assert out.startswith("growth budget kept: given costs grows as n^2.00 where n^2 is allowed\n")
+    assert out.startswith("growth budget kept: the given cost grows as n^2.00 where n^2 is allowed\n")
     code, out, err = told("c.csv", "--bound", "T(n) = 2 T(n/2) + n")
     assert (code, err) == (1, "")
-    assert out.startswith("growth budget exceeded: given costs grows as n^2.00 where n log n is allowed\n")
+    assert out.startswith("growth budget exceeded: the given cost grows as n^2.00 where n log n is allowed\n")
     assert "repeat" not in out, "there is nothing to run again"
     assert max(map(len, out.splitlines())) <= 80
 
