@@ -23,6 +23,8 @@ _MOST_RANKS: Final = 8
 _ENOUGH_CALLS: Final = 32
 _ENOUGH_SIZES: Final = 5
 _ROUNDING: Final = 2.0
+_POWER_ROUNDING: Final = 0.05
+_CLEAR: Final = 16.0
 _MIX: Final = np.int64(0x2545F4914F6CDD1D)
 
 
@@ -206,7 +208,9 @@ def _part(n: Floats, s: Floats, share: float, smallest: float) -> Part:
         value, fixed = _spread(s), bool(s.max() - s.min() < 0.5)
     elif kind == "power":
         value = Spread(mean=power, low=power, high=power)
-        fixed = bool(np.mean(np.abs(s - n**power) <= _ROUNDING) > 0.9)
+        powers = np.log(np.maximum(s, 1.0)) / np.log(np.maximum(n, 2.0))
+        clear = n >= min(_CLEAR, n.max())  # roots of small numbers are mostly rounding
+        fixed = bool(np.mean(np.abs(powers[clear] - power) <= _POWER_ROUNDING) > 0.9)
     else:
         # Large calls are least rounded, so they say what the ratio is.
         top = n >= np.quantile(n, 0.9)
@@ -238,8 +242,9 @@ def _kind(n: Floats, s: Floats, smallest: float) -> tuple[Kind, float]:
     misfits = []
     for kind, guess in guesses:
         error = np.abs(y - guess)
-        if kind == "power" and not 0.1 < power < 0.9:
-            error = error + x
+        if kind == "power":
+            # Roots are rare, and a power follows a scattered ratio as well as the ratio does.
+            error = 2 * error if 0.1 < power < 0.9 else error + x
         if kind == "ratio" and np.median(y / x) <= 0:
             error = error + x
         misfits.append((round(float(np.mean(np.maximum(error - 1.0, 0) / x)), 3), float(np.mean(error / x))))

@@ -116,7 +116,7 @@ def hidden_toll(steps: Work, time: Work, confidence: float = 0.95) -> tuple[Toll
     exponent = growth.estimate
 
     def log_steps(n: float) -> float:
-        beyond = max(math.log(n) - known[-1], 0.0)
+        beyond = max(math.log(n) - float(known[-1]), 0.0)
         return float(np.interp(math.log(n), known, told)) + exponent * beyond
 
     expected = np.exp([log_steps(n) for n in time.sizes])

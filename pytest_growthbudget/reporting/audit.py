@@ -23,22 +23,23 @@ def describe(audit: dict[str, Any]) -> str:
 
 def first_line(audit: dict[str, Any]) -> str:
     """One sentence: what the code follows, or which terms it does not keep."""
-    name = audit["function"]
+    head = f"audit of {audit['function']}:"
     if audit["observed"] is None:
-        return f"audit of {name}: no recurrence could be told"
-    broken = _broken(audit)
-    if not audit["declared"] or not audit["checks"] or not broken:
-        kept = "follows what was declared" if _terms(audit) and not broken else f"seems to follow {audit['observed']}"
-        return f"audit of {name}: it {kept}"
-    named = " and ".join(dict.fromkeys(_NAMES[check["about"]] for check in broken))
-    return f"audit of {name}: {named} {_consequence(audit)}"
+        return f"{head} no recurrence could be told"
+    broken = [_NAMES[check["about"]] for check in _broken(_terms(audit))]
+    again = "; the same subproblems are solved again and again" if _overlaps(audit) else ""
+    if broken:
+        named = list(dict.fromkeys(broken))
+        verb = "is" if len(named) == 1 else "are"
+        return f"{head} {' and '.join(named)} {verb} not as declared, {_consequence(audit)}{again}"
+    follows = "follows what was declared" if _terms(audit) else f"seems to follow {audit['observed']}"
+    return f"{head} it {follows}{again}"
 
 
 _NAMES = {
     "subproblems": "the number of subproblems",
     "argument": "the size of a subproblem",
     "toll": "the toll",
-    "overlap": "subproblems that overlap",
 }
 
 
@@ -46,23 +47,30 @@ def _terms(audit: dict[str, Any]) -> list[dict[str, Any]]:
     return [check for check in audit["checks"] if check["about"] != "overlap"]
 
 
-def _broken(audit: dict[str, Any]) -> list[dict[str, Any]]:
-    return [check for check in audit["checks"] if check["agrees"] is False]
+def _overlaps(audit: dict[str, Any]) -> bool:
+    return len(_terms(audit)) < len(audit["checks"])
+
+
+def _broken(checks: list[dict[str, Any]]) -> list[dict[str, Any]]:
+    return [check for check in checks if check["agrees"] is False]
 
 
 def _consequence(audit: dict[str, Any]) -> str:
-    if audit["relation"] == "faster":
-        return f"not as declared, which leads to {audit['implies']}"
-    if audit["relation"] == "same":
-        return f"not as declared, though the growth is: {audit['implies']}"
-    if audit["relation"] == "slower":
-        return f"not as declared, though {audit['implies']} grows no faster"
-    return "not as declared"
+    implied = audit["implies"]
+    return {
+        "faster": f"which leads to {implied}",
+        "same": f"though the growth is: {implied}",
+        "slower": f"though {implied} grows no faster",
+    }.get(audit["relation"], "and the recurrence observed could not be solved")
 
 
 def blame(audit: dict[str, Any]) -> str:
-    """What to look at where the budget is exceeded: the broken terms, or "" where the audit accuses none."""
-    return "; ".join(_sentence(check) for check in _broken(audit))
+    """What to look at where the budget is exceeded: the terms that are not kept, as long as what they lead to grows
+    faster than what was declared; else "".
+    """
+    if audit["relation"] != "faster":
+        return ""
+    return "; ".join(_sentence(check) for check in _broken(audit["checks"]))
 
 
 def _sentence(check: dict[str, Any]) -> str:
