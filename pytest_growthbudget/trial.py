@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import math
-import statistics
 from collections.abc import Callable, Mapping
 from dataclasses import asdict, replace
 from typing import TYPE_CHECKING, Any
@@ -11,6 +9,7 @@ from typing import TYPE_CHECKING, Any
 import pytest
 
 from pytest_growthbudget.fitting.judgement import Finding, ForecastRow, Judgement
+from pytest_growthbudget.fitting.scale import allowed, on_one_scale
 from pytest_growthbudget.measuring.campaign import Campaign, Limits
 from pytest_growthbudget.measuring.guards import Watch
 from pytest_growthbudget.measuring.readings import MemoryCurve, Promise
@@ -209,35 +208,6 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
 
 def _name(reference: object) -> str:
     return str(getattr(reference, "__name__", "the reference"))
-
-
-def allowed(finding: Finding, log_growth: Callable[[float], float]) -> tuple[float, ...]:
-    """What the budget allows at each size of `finding`, scaled to the costs at its three smallest sizes."""
-    scale = _scale(finding, log_growth)
-    return () if scale is None else tuple(_allowed_at(row.size, scale, log_growth) for row in finding.sizes)
-
-
-def on_one_scale(finding: Finding, log_growth: Callable[[float], float]) -> Finding:
-    """`finding`, with what the budget allows at the sizes foreseen on the scale of `allowed`.
-
-    A rule may have judged the last sizes alone, and scaled its forecast to those.
-    """
-    scale = _scale(finding, log_growth)
-    if scale is None:
-        return finding
-    rows = tuple(replace(row, allowed=_allowed_at(row.size, scale, log_growth)) for row in finding.forecast)
-    return replace(finding, forecast=rows)
-
-
-def _scale(finding: Finding, log_growth: Callable[[float], float]) -> float | None:
-    rows = [row for row in finding.sizes if row.cost > 0]
-    if not rows:
-        return None
-    return statistics.median(math.log(row.cost) - log_growth(row.size) for row in rows[:3])
-
-
-def _allowed_at(size: int, scale: float, log_growth: Callable[[float], float]) -> float:
-    return math.exp(min(scale + log_growth(size), 700.0))
 
 
 def memory_curve(config: pytest.Config) -> MemoryCurve | None:

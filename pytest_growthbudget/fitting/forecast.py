@@ -113,13 +113,12 @@ def log_cost_at(seen: Observations, lines: Lines, allowed: float, regressor: flo
 
 
 def allowed_cost(seen: Observations, log_growth: LogGrowth, size: float) -> float:
-    """The cost that the budget allows at a size, scaled from the smallest third of the sizes (three at least)."""
+    """The cost that the budget allows at a size, scaled to where the cost was lowest against it."""
     return _exp(_scale(seen) + log_growth(size))
 
 
 def _scale(seen: Observations) -> float:
-    few = max(3, len(seen) // 3)
-    return float(np.median((np.log(seen.costs) - seen.log_growth)[:few]))
+    return float(_smooth(np.log(seen.costs) - seen.log_growth).min())
 
 
 def forecast_sizes(largest: int, *, exponential: bool) -> tuple[int, ...]:

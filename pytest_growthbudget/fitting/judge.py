@@ -13,8 +13,8 @@ from pytest_growthbudget.fitting import reasons
 from pytest_growthbudget.fitting.evidence import Evidence, gather
 from pytest_growthbudget.fitting.excess import CLOCK_NOISE, FEWEST_SIZES
 from pytest_growthbudget.fitting.finding import conclude, shown_excess
-from pytest_growthbudget.fitting.forecast import allowed_cost
 from pytest_growthbudget.fitting.judgement import Finding, Judgement, VerdictName
+from pytest_growthbudget.fitting.scale import allowed, on_one_scale
 from pytest_growthbudget.fitting.verdict import Limits, given_limits, is_exceeded, is_within, rises_enough
 from pytest_growthbudget.measuring.readings import Promise, Series
 
@@ -69,19 +69,19 @@ def judge(
     limits = given_limits(slack, confidence)
     evidence = gather(promise, {}, [series], promise.curve, CLOCK_NOISE)
     assert evidence is not None
-    finding = decide_once(promise, evidence, limits)
+    finding = on_one_scale(decide_once(promise, evidence, limits), promise.log_growth)
     return Judgement(
         **{name: getattr(finding, name) for name in Finding.__dataclass_fields__},
         bound=bound.text,
         theta=bound.theta,
         theorem=bound.theorem,
         steps=bound.steps,
-        meter="given costs",
+        meter="the given cost",
         unit="",
         slack=slack,
         confidence=confidence,
         notes=(NO_MEMORY,),
-        allowed=tuple(allowed_cost(evidence.seen, promise.log_growth, row.size) for row in finding.sizes),
+        allowed=allowed(finding, promise.log_growth),
         variable=variable,
     )
 

@@ -60,12 +60,30 @@ class Finding:
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
+class GrownLine:
+    """A line of the user's own code that outgrows the budget between two sizes.
+
+    `kind`: it "runs" more often, or "takes" longer each time. `before`, `after`: executions, or nanoseconds each, at
+    the two `sizes`. `file`: from the project's root. `source`: the line, shortened.
+    """
+
+    file: str
+    line: int
+    source: str
+    kind: Literal["runs", "takes"]
+    sizes: tuple[int, int]
+    before: float
+    after: float
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
 class Judgement(Finding):
     """A finding with the budget it was held to.
 
     `bound`: the promise as written; `theta`: its growth; `steps`: the derivation. `slack`, `confidence`: what the
     decision used. `seconds`: wall time of the whole measurement. `notes`: what distorted the readings, one
-    sentence each. `allowed`: for each row of `sizes`, what the budget allows there, scaled to the smallest sizes.
+    sentence each. `allowed`: for each row of `sizes`, what the budget allows there, scaled to where the cost was
+    lowest against it.
     `variable`: the name of the size that grew. `ceiling`: the forecast that was held to a ceiling, and the ceiling.
     `yardstick`: for each row of `sizes`, what the reference function cost. `ray`: which sizes grew, where the bound
     has several variables (the worst ray is the one reported); `rays`: the verdict on each ray that was judged.
@@ -88,3 +106,4 @@ class Judgement(Finding):
     yardstick: tuple[float, ...] = ()
     ray: str = ""
     rays: tuple[tuple[str, VerdictName], ...] = ()
+    lines: tuple[GrownLine, ...] = ()
