@@ -9,7 +9,7 @@ def test_small_shifts(lifts: list[int], minutes: int) -> None:
     assert shortest_shift(lifts) == minutes
 
 
-# A plain run takes no more than `largest` either: a hundred lifts would never end.
+# No shift has more lifts than `largest`.
 @pytest.mark.growth_budget("T(n) = 2 T(n-1) + 1", largest=18)
 def test_the_lifts_are_shared_out_in_the_best_way(lifts: list[int], metered) -> None:
     with metered:
