@@ -78,5 +78,10 @@ def too_few(ladder: Ladder, count: int, needed: int) -> str:
     return f"{sizes} could be read where {needed} are needed: {_SHORT_OF.get(ladder.ended, _SHORT_OF[''])}"
 
 
+def low(size: int, cost: float) -> str:
+    """Why a ladder that time cut off is no ground for saying that the budget is kept."""
+    return f"the largest size reached is n = {size}, where a call takes {cost / 1e3:.0f} us: too little to go by"
+
+
 def out_of_time(reason: str) -> str:
     return f"the time limit ended the readings before they could decide ({reason}); raise `time_limit`"

@@ -50,6 +50,9 @@ STAGE_B_COST: Final = 32e6
 STAGE_C_COST: Final = 160e6
 STAGE_C_FOOTPRINT: Final = 16 * 2.0**20
 STAGE_C_CALLS: Final = 3
+#: A ladder that time cut off below this cost and within this span of sizes says too little to keep a budget.
+LOW_TOP: Final = 200e3
+SHORT_SPAN: Final = 30.0
 AHEAD_COST: Final = 60e6
 AHEAD_FOOTPRINT: Final = 32 * 2.0**20
 AHEAD_BEYOND: Final = 1.9
@@ -232,6 +235,9 @@ class _Clock:
 
     def within(self, *, deflated: bool = False) -> Finding:
         evidence, limits = self.judged(), self.run.limits
+        sizes, costs = evidence.seen.sizes, evidence.seen.costs
+        if self.run.ladder.ended == "time" and costs[-1] < LOW_TOP and sizes[-1] < SHORT_SPAN * sizes[0]:
+            return self.conclude("undecided", reasons.out_of_time(reasons.low(int(sizes[-1]), float(costs[-1]))))
         return self.conclude("within", reasons.within(evidence, limits, deflated=deflated), memory=deflated)
 
     def exceeded(self, window: Window, *, confirmed: bool) -> Finding:
