@@ -7,9 +7,11 @@ import gc
 import sys
 import threading
 from collections.abc import Iterator
+from itertools import pairwise
 
 import pytest
 
+from pytest_growthbudget.auditing.audit import run
 from pytest_growthbudget.auditing.calls import Calls
 from pytest_growthbudget.meters.protocol import MeterError
 from tests.auditing.made import meter_of, recorded, sizes_of_children
@@ -50,7 +52,7 @@ def counted(n: int) -> int:
 
 def test_own_work_is_two_steps_a_turn_and_leaves_the_children_out() -> None:
     own = recorded(counted, (50,)).own.tolist()
-    rises = {one - other for one, other in zip(own[:-2], own[1:-1], strict=True)}
+    rises = {one - other for one, other in pairwise(own[:-1])}
     assert rises == {2}
 
 
@@ -67,7 +69,7 @@ def turned(n: int) -> int:
 
 def test_the_work_of_helpers_is_the_callers_own() -> None:
     own = recorded(helped, (50,)).own.tolist()
-    rises = {one - other for one, other in zip(own[:-2], own[1:-1], strict=True)}
+    rises = {one - other for one, other in pairwise(own[:-1])}
     assert rises == {2}
 
 
@@ -127,12 +129,8 @@ def test_a_body_that_raises_leaves_no_hook_behind() -> None:
         fails(n - 1)
 
     meter = meter_of(fails)
-    meter.start()
     with pytest.raises(Grounded):
-        try:
-            fails(5)
-        finally:
-            meter.stop()
+        run(meter, lambda: fails(5))
     assert sys.gettrace() is None
     assert sys.getprofile() is None
     calls = meter.ledger.calls()
@@ -185,7 +183,7 @@ def test_recording_stops_at_the_limit_and_the_run_goes_on() -> None:
     # Those that were open when it stopped are a path from the root.
     still_open = [index for index, whole in enumerate(calls.whole) if not whole]
     assert still_open[0] == 0
-    assert all(calls.parent[one] == other for one, other in zip(still_open[1:], still_open[:-1], strict=True))
+    assert all(calls.parent[inner] == outer for outer, inner in pairwise(still_open))
     assert sys.gettrace() is None
 
 
@@ -202,8 +200,10 @@ def test_a_run_of_exactly_the_limit_was_not_stopped() -> None:
         (lambda n: 1 / (n - 3), "the size of a call of halve could not be told: ZeroDivisionError: division by zero"),
         (
             lambda n: None,
-            "the size of a call of halve could not be told: TypeError: "
-            "float() argument must be a string or a real number, not 'NoneType'",
+            (
+                "the size of a call of halve could not be told: TypeError: "
+                "float() argument must be a string or a real number, not 'NoneType'"
+            ),
         ),
     ],
 )
@@ -293,7 +293,7 @@ def test_it_lives_beside_another_tool_and_refuses_where_all_ids_are_taken() -> N
         assert len(recorded(halve, (4,))) == 7
         for tool in taken[:4]:
             sys.monitoring.use_tool_id(tool, "lighthouse")  # type: ignore[attr-defined]
-        with pytest.raises(MeterError, match="needs a tool id of sys.monitoring, and all are taken: .*lighthouse"):
+        with pytest.raises(MeterError, match=r"needs a tool id of sys.monitoring, and all are taken: .*lighthouse"):
             meter_of(halve).start()
         sys.monitoring.free_tool_id(taken[0])  # type: ignore[attr-defined]
         with pytest.raises(MeterError, match="needs two tool ids"):

@@ -99,13 +99,17 @@ def test_text_names_functions_methods_and_functions_inside_them(path: str, line_
     [
         (
             len,
-            "audit=len has no Python code whose calls could be watched; "
-            'give a Python function, a method, or text such as "package.module:function"',
+            (
+                "audit=len has no Python code whose calls could be watched; "
+                'give a Python function, a method, or text such as "package.module:function"'
+            ),
         ),
         (
             3,
-            "audit=3 has no Python code whose calls could be watched; "
-            'give a Python function, a method, or text such as "package.module:function"',
+            (
+                "audit=3 has no Python code whose calls could be watched; "
+                'give a Python function, a method, or text such as "package.module:function"'
+            ),
         ),
         ("berths", "audit='berths' is no target; write \"package.module:function\", or give the function itself"),
         (
@@ -180,8 +184,10 @@ def test_the_size_of_a_call(function: Any, size_of: Any, arguments: dict[str, An
         (
             grown,
             lambda items, most: 1,
-            "size_of takes items, most, but grown has the arguments items, low, high; "
-            "name its parameters after those it needs",
+            (
+                "size_of takes items, most, but grown has the arguments items, low, high; "
+                "name its parameters after those it needs"
+            ),
         ),
     ],
 )
