@@ -26,6 +26,7 @@ from pytest_growthbudget.reporting.summary import total_line
 RANK = ("exceeded", "risen", "undecided", "unmeasured", "within")
 #: Up to so many budgets the page opens with all of them unfolded.
 FEW = 6
+LINE_WIDTH = 100
 
 _ENVIRONMENT = (
     ("Time (UTC)", "run", "time"),
@@ -61,6 +62,7 @@ def render(records: Sequence[Record]) -> str:
     jinja = Environment(autoescape=True, undefined=StrictUndefined, trim_blocks=True, lstrip_blocks=True)
     jinja.globals["mark"] = _mark
     jinja.filters["breakable"] = _breakable
+    jinja.filters["hundredths"] = _hundredths
     return jinja.from_string(_resource("page.html.j2")).render(
         total=total_line([record["judgement"] for record in records]),
         budgets=budgets,
@@ -120,6 +122,7 @@ def _budget(record: Record, key: str, *, several: bool, opened: bool) -> dict[st
         "has_budget_line": bool(drawn and drawn.budget),
         "has_forecast": bool(drawn and len(drawn.fit) > len(drawn.readings)),
         "facts": _facts(judgement) + ([("run", record["run"]["id"])] if several else []),
+        "look_at": _look_at(judgement),
         "steps": judgement["steps"],
         "rows": _rows(judgement),
         "ahead": _ahead(judgement),
@@ -143,10 +146,16 @@ def _estimate(interval: Mapping[str, float] | None) -> float:
     return interval["estimate"] if interval else math.nan
 
 
+def _hundredths(value: float) -> str:
+    text = f"{value:.2f}"
+    return "0.00" if text == "-0.00" else text
+
+
 def _interval(interval: Mapping[str, float] | None) -> str:
     if interval is None:
         return ""
-    return f"{interval['estimate']:.2f} ({interval['low']:.2f} to {interval['high']:.2f})"
+    estimate, low, high = (_hundredths(interval[end]) for end in ("estimate", "low", "high"))
+    return f"{estimate} ({low} to {high})"
 
 
 def _percent(judgement: Mapping[str, Any]) -> str:
@@ -180,6 +189,15 @@ def _facts(judgement: Mapping[str, Any]) -> Facts:
         ("seed", judgement["seed"]),
     ]
     return [(name, str(text)) for name, text in known if text not in (None, "", False)]
+
+
+def _look_at(judgement: Mapping[str, Any]) -> str:
+    """The lines of the user's code that grow fastest; "" where none were looked for."""
+    if not judgement.get("lines"):
+        return ""
+    from pytest_growthbudget.reporting import lines
+
+    return "\n".join(lines.describe(judgement["lines"], judgement["variable"], LINE_WIDTH))
 
 
 def _ceiling(judgement: Mapping[str, Any]) -> str:

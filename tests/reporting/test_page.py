@@ -173,6 +173,25 @@ def test_a_budget_with_a_risen_exponent_stands_out() -> None:
     assert "growth has drifted: cpu_time grows as n^1.10 where n^0.90 was accepted" in found
 
 
+def test_lines_to_look_at() -> None:
+    pytest.importorskip("pytest_growthbudget.reporting.lines")
+    found = record(2.0)
+    found["judgement"]["lines"] = [
+        {
+            "file": "harbour/berths.py", "line": 42, "source": "if ship in taken < 3:", "kind": "runs",
+            "sizes": [64, 128], "before": 4096, "after": 16384,
+        }
+    ]  # fmt: skip
+    text = render([found])
+    assert "What to look at" in text
+    assert "harbour/berths.py:42 runs n^2.0 times: 4,096 -&gt; 16,384" in text
+    assert "if ship in taken &lt; 3:" in text
+
+
+def test_nothing_is_said_to_be_less_than_nothing(page: str) -> None:
+    assert re.findall(r">-0\.00\b", page) == []
+
+
 def test_hundreds_of_budgets_stay_small() -> None:
     one = real_records()
     few, more = (len(render(one[:count])) for count in (4, 8))
