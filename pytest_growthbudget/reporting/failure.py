@@ -6,7 +6,7 @@ import math
 import textwrap
 from typing import Any
 
-from pytest_growthbudget.reporting import audit, risen, units
+from pytest_growthbudget.reporting import audit, lines, risen, units
 
 WIDTH = 80
 BAR = 24
@@ -198,17 +198,26 @@ def _forecast(judgement: dict[str, Any]) -> str:
 
 
 def _closing(judgement: dict[str, Any]) -> str:
-    lines = []
+    rows = []
     if judgement["nearest"]:
-        lines.append(_fact("nearest", f"{judgement['nearest']}, the simple growth nearest to what was observed"))
+        rows.append(_fact("nearest", f"{judgement['nearest']}, the simple growth nearest to what was observed"))
     if judgement["verdict"] == "exceeded":
-        lines.append(_fact("look at", _hint(judgement)))
-    lines.extend(_fact("note", note) for note in judgement["notes"])
+        rows.extend(_look_at(judgement))
+    rows.extend(_fact("note", note) for note in judgement["notes"])
     if judgement["seconds"]:
-        lines.append(
+        rows.append(
             _fact("repeat", f"--growth-seed {judgement['seed']} (measured in {units.seconds(judgement['seconds'])})")
         )
-    return "\n".join(lines)
+    return "\n".join(rows)
+
+
+def _look_at(judgement: dict[str, Any]) -> list[str]:
+    accused = judgement.get("audit") and audit.blame(judgement["audit"])
+    if not judgement["lines"]:
+        return [_fact("look at", _hint(judgement))]
+    rows = lines.describe(judgement["lines"], judgement["variable"], WIDTH - 13)
+    head = [_fact("look at", accused)] if accused else []
+    return head + [f"  {'' if head or number else 'look at':<11}{row}" for number, row in enumerate(rows)]
 
 
 def _hint(judgement: dict[str, Any]) -> str:

@@ -10,7 +10,7 @@ import math
 from dataclasses import fields
 from typing import Any
 
-from pytest_growthbudget.fitting.judgement import ForecastRow, Interval, Judgement, SizeRow
+from pytest_growthbudget.fitting.judgement import ForecastRow, GrownLine, Interval, Judgement, SizeRow
 
 
 def plain(value: Any) -> Any:
@@ -57,6 +57,7 @@ def from_wire(wire: dict[str, Any]) -> Judgement:
     for name in ("steps", "notes", "allowed", "yardstick"):
         values[name] = tuple(values.get(name, ()))
     values["rays"] = tuple((ray, verdict) for ray, verdict in values.get("rays", ()))
+    values["lines"] = tuple(GrownLine(**{**line, "sizes": tuple(line["sizes"])}) for line in values.get("lines", ()))
     return Judgement(**values)
 
 
