@@ -471,3 +471,39 @@ def test_a_quadratic_body_is_reported(suite: pytest.Pytester, extra: tuple[str, 
     if junit:
         text = (suite.path / "out.xml").read_text()
         assert 'message="Failed: growth budget exceeded: cpu_time grows as' in text
+
+
+@pytest.mark.parametrize("scope", ["function", "module", "session"])
+def test_the_footprint_is_that_of_the_workload_whatever_its_scope(suite: pytest.Pytester, scope: str) -> None:
+    suite.makeconftest(
+        f"""
+        import pytest
+        from pytest_growthbudget import trial
+        from pytest_growthbudget.measuring.guards import Watch
+        from pytest_growthbudget.meters.clocks import CpuTime
+        from pytest_growthbudget.workloads.repeat import Repeater
+
+        @pytest.fixture(scope={scope!r})
+        def block(problem_size):
+            return bytearray(problem_size)
+
+        def weigh(item):
+            repeater = Repeater(item, lambda size: {{"problem_size": size}}, Watch(60))
+            repeater.take(1_000_000, CpuTime())
+            assert 1_000_000 <= repeater.footprint(1_000_000) < 1_100_000
+            assert repeater.footprint(10_000) < 100_000
+
+        def pytest_configure():
+            trial.hold = weigh
+        """
+    )
+    suite.makepyfile(
+        """
+        import pytest
+
+        @pytest.mark.growth_budget("1")
+        def test_length(block):
+            len(block)
+        """
+    )
+    suite.runpytest_subprocess().assert_outcomes(passed=1)

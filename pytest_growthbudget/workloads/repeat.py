@@ -11,12 +11,13 @@ from __future__ import annotations
 import gc
 import warnings
 from collections.abc import Callable, Iterator, Mapping
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 import pytest
 
+from pytest_growthbudget.measuring.guards import Exhausted, Overrun
 from pytest_growthbudget.meters import clocks
 from pytest_growthbudget.meters.protocol import MeterError
 from pytest_growthbudget.workloads import internals
@@ -92,12 +93,20 @@ class GrowthItem(pytest.Item):
     def runtest(self) -> None:
         from pytest_growthbudget.trial import hold
 
+        # A plugin may run an item again.
+        self.judgements.clear()
+        self.failed_at = ""
+        names = dict.fromkeys(name for plan in self.plans for name in plan.size_names)
         internals.leave_stack(self, self.template)
+        internals.forget_sizes(self.template, names)
         try:
             hold(self)
         finally:
-            if internals.is_set_up(self.template):
-                internals.tear_down(self.template, self)
+            try:
+                if internals.is_set_up(self.template):
+                    internals.tear_down(self.template, self)
+            finally:
+                internals.forget_sizes(self.template, names)
 
     def repr_failure(self, excinfo: pytest.ExceptionInfo[BaseException], style: Any = None) -> Any:
         return self.template.repr_failure(excinfo)
@@ -136,6 +145,8 @@ class Repeater:
         self._shared = item.config.stash[shared_key]
         self._uses_metered = "metered" in internals.direct_arguments(self._template)
         self._readings = 0
+        #: Whether the body has come back at least once.
+        self.returned = False
         #: Whether workloads of one size differ.
         self.random = "workload_rng" in internals.names_of_fixtures(self._template)
         #: Whether a call leaves the workload as it was, by the scopes of the fixtures: see `repeatable`.
@@ -150,17 +161,26 @@ class Repeater:
         self._shared.reseed(self._item.nodeid, size, self._readings)
         try:
             try:
-                arguments = internals.set_up(self._template)
+                arguments = self._build()
                 # Only the body may be cut short: a fixture that is leaves pytest's own bookkeeping undone.
                 self._watch.guard()
                 yield arguments
             finally:
                 self._watch.release()
                 internals.tear_down(self._template, self._item)
-        except MeterError:
+        except (MeterError, Exhausted, Overrun, KeyboardInterrupt, pytest.exit.Exception):
             raise
-        except (Exception, pytest.skip.Exception, pytest.fail.Exception) as error:
+        except BaseException as error:
             raise BodyFailed(sizes) from error
+
+    def _build(self) -> dict[str, object]:
+        """Build the workload. Raises `Exhausted` for want of memory, once a smaller one could be built."""
+        try:
+            return internals.set_up(self._template)
+        except MemoryError as error:
+            if self.returned:
+                raise Exhausted from error
+            raise
 
     def yardstick(self, size: int, meter: Meter, reference: Callable[..., object]) -> float:
         """Build the workload that the last reading of the body had, anew, and read one call of `reference` on it.
@@ -206,12 +226,17 @@ class Repeater:
                         function(**arguments)
                         for _ in rest:
                             function(**arguments)
-                    finally:
-                        cost = meter.stop()
+                    except BaseException:
+                        # What the meter has to say of a call that was cut short must not hide why it was.
+                        with suppress(MeterError):
+                            meter.stop()
+                        raise
+                    cost = meter.stop()
                     wall, cpu = clocks.wall_time_ns() - wall, clocks.cpu_time_ns() - cpu
             finally:
                 entered = metered.entered
                 metered.arm(None)
+            self.returned = True
             if self._uses_metered and not entered:
                 raise MeterError(
                     "the test asks for `metered` but ran no code inside `with metered:`; "
@@ -229,6 +254,8 @@ class Repeater:
         if not running:
             tracemalloc.start()
         try:
+            # A wide workload of this size that is up already would weigh nothing.
+            internals.forget_sizes(self._template, self._assign(size))
             tracemalloc.reset_peak()
             before = tracemalloc.get_traced_memory()[0]
             with self._set_up(size) as arguments:
