@@ -31,7 +31,9 @@ VERDICTS = "2 growth budgets: 1 within, 1 exceeded*"
 
 
 @pytest.fixture
-def suite(pytester: pytest.Pytester) -> pytest.Pytester:
+def suite(pytester: pytest.Pytester, monkeypatch: pytest.MonkeyPatch) -> pytest.Pytester:
+    (pytester.path / "elsewhere").mkdir()
+    monkeypatch.setenv("TMPDIR", str(pytester.path / "elsewhere"))
     pytester.makepyfile(test_harbour=SUITE)
     return pytester
 
@@ -100,8 +102,8 @@ def test_a_full_disk(suite: pytest.Pytester) -> None:
     )
     assert result.ret == pytest.ExitCode.TESTS_FAILED
     rescued = Path(result.stdout.str().split("they are kept in ")[1].split("\n")[0])
+    assert rescued.parent.name == "elsewhere"
     assert len(read_records([rescued]).records) == 1
-    rescued.unlink()
 
 
 def test_a_page_without_its_extra(suite: pytest.Pytester) -> None:
