@@ -28,6 +28,7 @@ _FEWEST_RUNS, _MOST_RUNS = 5, 40
 _ENOUGH_CALLS: Final = 2000
 _SPEND_NS: Final = 0.4e9
 _GROWING: Final = 0.05
+UNCOPIED: Final = "The arguments cannot be copied, so work hidden in C functions was not looked for."
 
 Take = Callable[[CallMeter], None]
 
@@ -36,16 +37,18 @@ Take = Callable[[CallMeter], None]
 class Audit:
     """What the calls of one function show. `str()` of it is a report; `wire()` the same as plain builtins.
 
-    `declared`: the bound or recurrence that it was held against, "" for none. `observed`: the recurrence that the
-    code seems to follow, None where the sizes do not shrink or there was nothing to see. `relation`: the growth it
-    implies against the declared one ("faster" breaks the promise). `checks`: the declared terms one by one, and
-    overlapping subproblems. `notes`: what the reader has to know of the recording, whole sentences.
+    `calls`: how many were recorded, in how many `runs`. `declared`: the bound or recurrence that it was held against,
+    "" for none. `observed`: the recurrence that the code seems to follow, None where the sizes do not shrink or there
+    was nothing to see. `relation`: the growth it implies against the declared one ("faster" breaks the promise).
+    `checks`: the declared terms one by one, and overlapping subproblems. `notes`: what the reader has to know of the
+    recording, whole sentences.
     """
 
     function: str
     declared: str
     theta: str
     calls: int
+    runs: int
     pattern: Pattern | None
     toll: Toll | None
     observed: Observed | None
@@ -94,23 +97,21 @@ def audit(
     target = _target(function, of)
     size = sizer(target, size_of)
     budget = parse_budget(bound) if isinstance(bound, str) else bound
-    copies = _copies(args, keywords)
+    given = (args, keywords)
+    fresh = _can_be_copied(given)
 
     def take(meter: CallMeter) -> None:
-        arguments, named = next(copies)
+        arguments, named = copy.deepcopy(given) if fresh else given
         run(meter, lambda: function(*arguments, **named))
 
     steps = record(target, size, "steps", limit)
+    if not fresh:
+        repeat(steps, take, at_least=1, enough=0)
+        return assess(target, steps, None, budget, (UNCOPIED,))
     repeat(steps, take, at_least=1)
-    clock = record(target, size, "time", min(limit, TIMED_LIMIT))
-    timed: CallMeter | None = clock
-    notes: tuple[str, ...] = ()
-    try:
-        repeat(clock, take)
-    except StopIteration:
-        timed = None
-        notes = ("The arguments cannot be copied, so work hidden in C functions was not looked for.",)
-    return assess(target, steps, timed, budget, notes)
+    timed = record(target, size, "time", min(limit, TIMED_LIMIT))
+    repeat(timed, take)
+    return assess(target, steps, timed, budget)
 
 
 def _target(function: Callable[..., Any], of: object) -> Target:
@@ -126,15 +127,12 @@ def _target(function: Callable[..., Any], of: object) -> Target:
     return resolve(of)
 
 
-def _copies(args: tuple[Any, ...], keywords: dict[str, Any]) -> Any:
-    """The arguments again and again, each time fresh; once only where they cannot be copied."""
-    while True:
-        try:
-            fresh = copy.deepcopy((args, keywords))
-        except Exception:  # __deepcopy__ and __reduce__ may raise anything
-            yield args, keywords
-            return
-        yield fresh
+def _can_be_copied(given: object) -> bool:
+    try:
+        copy.deepcopy(given)
+    except Exception:  # __deepcopy__ and __reduce__ may raise anything
+        return False
+    return True
 
 
 def record(target: Target, size: Sizer, gauge: Any, limit: int = LIMIT) -> CallMeter:
@@ -200,6 +198,7 @@ def assess(
         declared=budget.text if budget is not None else "",
         theta=budget.theta if budget is not None else "",
         calls=len(calls),
+        runs=len(calls.runs),
         pattern=seen,
         toll=toll,
         observed=found,

@@ -111,7 +111,7 @@ def _facts(audit: dict[str, Any]) -> list[str]:
         lines.append(
             _fact(
                 "calls",
-                f"{units.count(audit['calls'])}, of which {units.count(pattern['dividing'])} divide; "
+                f"{units.count(audit['calls'])} in {_runs(audit)}, of which {units.count(pattern['dividing'])} divide; "
                 f"depth {pattern['depth']} at size {units.count(pattern['largest'])}; "
                 f"base case of size {_range(pattern['base'])}",
             )
@@ -131,6 +131,10 @@ def _facts(audit: dict[str, Any]) -> list[str]:
             )
         )
     return lines
+
+
+def _runs(audit: dict[str, Any]) -> str:
+    return "one run" if audit["runs"] == 1 else f"{audit['runs']} runs"
 
 
 def _range(spread: dict[str, float]) -> str:
