@@ -18,6 +18,7 @@ from pytest_growthbudget.reporting.extra import missing_libraries
 from pytest_growthbudget.reporting.files import reason, replace_file
 from pytest_growthbudget.reporting.records import NotWritten, Record, RecordsFile, record_of
 from pytest_growthbudget.settings import Settings
+from pytest_growthbudget.workloads import internals
 
 SHOWN_FAULTS = 5
 
@@ -71,6 +72,8 @@ class Keeper:
     # ------------------------------------------------------------ during and after
 
     def pytest_runtest_logreport(self, report: pytest.TestReport) -> None:
+        if internals.is_rerun(report):
+            return
         for judged in getattr(report, "growth_judgements", ()):
             record = record_of(judged, self.run, environment())
             self.records.append(record)

@@ -11,6 +11,7 @@ from typing import Any
 import pytest
 
 from pytest_growthbudget import settings as settings_module
+from pytest_growthbudget.underway import Underway, underway_key
 from pytest_growthbudget.workloads import collect, internals
 from pytest_growthbudget.workloads.fixtures import (
     Shared,
@@ -48,6 +49,12 @@ def pytest_addoption(parser: pytest.Parser) -> None:
         metavar="SECONDS",
         help="Spend at most this long on the budgets of one test, each (10).",
     )
+    group.addoption(
+        "--growth-session-time-limit",
+        type=float,
+        metavar="SECONDS",
+        help="Spend at most this long on measuring in the whole run, under xdist in each worker (no limit).",
+    )
     group.addoption("--growth-records", metavar="FILE", help="Add the judgements of this run to FILE, as JSON Lines.")
     group.addoption("--growth-page", metavar="FILE", help="Draw the judgements of this run as an HTML page in FILE.")
 
@@ -61,6 +68,8 @@ def pytest_configure(config: pytest.Config) -> None:
     config.stash[settings_key] = settings
     config.stash[shared_key] = Shared(settings.ordinary_size, settings.seed)
     config.pluginmanager.register(Ledger(), "growthbudget-ledger")
+    config.stash[underway_key] = Underway(config)
+    config.pluginmanager.register(config.stash[underway_key], "growthbudget-underway")
     if config.getoption("--growth-records") or config.getoption("--growth-page") or settings.ratchet:
         from pytest_growthbudget import keeping
 
@@ -74,9 +83,11 @@ def pytest_generate_tests(metafunc: pytest.Metafunc) -> None:
 
 
 @pytest.hookimpl(wrapper=True, tryfirst=True)
-def pytest_pycollect_makeitem(collector: pytest.Collector) -> Generator[None, Any, Any]:
+def pytest_pycollect_makeitem(collector: pytest.Collector, name: str, obj: object) -> Generator[None, Any, Any]:
     made = yield
     settings = collector.config.stash[settings_key]
+    if settings.enabled:
+        collect.refuse_lambda(collector, name, obj)
     if isinstance(made, list):
         return [collect.reported(item, settings) if isinstance(item, pytest.Function) else item for item in made]
     if made is not None and settings.enabled and internals.is_test_case(made):
@@ -94,10 +105,21 @@ def pytest_runtest_makereport(item: pytest.Item) -> Generator[None, Any, Any]:
     report = yield
     if report.when == "call" and isinstance(item, GrowthItem):
         from pytest_growthbudget.reporting.failure import sections
+        from pytest_growthbudget.reporting.properties import properties_of
 
         report.growth_judgements = [{"test": item.nodeid, **judgement} for judgement in item.judgements]
         report.sections.extend(sections(item.judgements, item.failed_at))
+        properties = properties_of(item.judgements)
+        item.user_properties.extend(properties)
+        report.user_properties.extend(properties)
     return report
+
+
+def pytest_enter_pdb(config: pytest.Config) -> None:
+    # Whoever debugs a body takes the time that it takes.
+    watch = config.stash[shared_key].watch
+    if watch is not None:
+        watch.stand_back()
 
 
 def pytest_report_header(config: pytest.Config) -> str | None:
@@ -117,7 +139,8 @@ class Ledger:
         self.judged: list[dict[str, Any]] = []
 
     def pytest_runtest_logreport(self, report: pytest.TestReport) -> None:
-        self.judged.extend(getattr(report, "growth_judgements", ()))
+        if not internals.is_rerun(report):
+            self.judged.extend(getattr(report, "growth_judgements", ()))
 
     def pytest_terminal_summary(self, terminalreporter: Any) -> None:
         if self.judged:

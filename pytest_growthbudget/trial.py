@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 import pytest
 
+from pytest_growthbudget.fitting import remarks
 from pytest_growthbudget.fitting.judgement import Finding, ForecastRow, Judgement
 from pytest_growthbudget.fitting.scale import allowed, on_one_scale
 from pytest_growthbudget.measuring.campaign import Campaign, Limits
@@ -17,7 +18,9 @@ from pytest_growthbudget.measuring.yardstick import YardstickGrowth
 from pytest_growthbudget.meters import clocks
 from pytest_growthbudget.meters.protocol import MeterError, close_meter
 from pytest_growthbudget.reporting.wire import to_wire
+from pytest_growthbudget.session_limit import judged as judged_in_time
 from pytest_growthbudget.taking import Taker
+from pytest_growthbudget.underway import underway, watched
 from pytest_growthbudget.workloads.collect import meter_of
 from pytest_growthbudget.workloads.fixtures import settings_key, shared_key
 from pytest_growthbudget.workloads.rays import Ray, rays
@@ -47,10 +50,10 @@ WORSE = ("within", "undecided", "unmeasured", "exceeded")
 def hold(item: GrowthItem) -> None:
     """Judge every budget of `item`, keep the judgements on it, and fail the test where one is not kept."""
     failure: BodyFailed | None = None
-    with collector_spared(), warnings_apart() as forget:
+    with underway(item.config).holding(item), collector_spared(), warnings_apart() as forget:
         for plan in item.plans:
             try:
-                judgement = judge_plan(item, plan, forget)
+                judgement = judged_in_time(item, plan, forget, judge_plan)
                 if judgement.verdict == "exceeded":
                     from pytest_growthbudget.hotspots import with_lines
 
@@ -131,7 +134,7 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
     value: Callable[[Mapping[str, float]], float] = (
         reference.log_value if plan.budget is None else plan.budget.ray(ray.moving).log_value
     )
-    watch = Watch(time_limit)
+    watch, shared = Watch(time_limit), item.config.stash[shared_key]
     repeater = Repeater(item, ray.assign, watch)
 
     def log_growth(n: float) -> float:
@@ -154,9 +157,10 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
         deterministic=meter.deterministic,
         curve=curve,
     )
+    underway(item.config).begin(item, plan, ray, meter.unit, time_limit)
     take = Taker(repeater, meter, forget, plan.yardstick, reference)
     campaign = Campaign(
-        take=take,
+        take=watched(take, underway(item.config)),
         footprint=repeater.footprint,
         now=clocks.wall_time_ns,
         limits=Limits(
@@ -170,13 +174,18 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
             floor=FLOOR.get(meter.unit, FEW_COUNTS if meter.deterministic else FLOOR["ns"]),
         ),
         seed=f"{plan.seed}/{item.nodeid}/{plan.meter}/{ray.name}",
+        allow=watch.allow,
     )
+    shared.watch = watch
     notes: tuple[str, ...] = ()
     ceiling: ForecastRow | None = None
     try:
         with watch.start():
             finding = on_one_scale(campaign.run(decide(promise)), log_growth)
-        notes = take.notes()
+        finding, notes = with_remarks(finding, campaign, plan, ray, log_growth)
+        if campaign.ran_away and not repeater.returned:
+            raise never_returned(ray, *campaign.ran_away)
+        notes = (*notes, *take.notes())
         if plan.at is not None and plan.ceiling is not None:
             from pytest_growthbudget.fitting.ceiling import under_ceiling
 
@@ -184,6 +193,7 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
     except MeterError as error:
         finding = Finding(verdict="unmeasured", reason=str(error))
     finally:
+        shared.watch = None
         close_meter(meter)
     budget = plan.budget
     return Judgement(
@@ -204,6 +214,32 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
         ceiling=ceiling,
         yardstick=() if budget is not None else tuple(reference.cost(row.size) for row in finding.sizes),
     )
+
+
+def with_remarks(
+    finding: Finding, campaign: Campaign, plan: Plan, ray: Ray, log_growth: Callable[[float], float]
+) -> tuple[Finding, tuple[str, ...]]:
+    """`finding`, with what became of calls that were cut off, and notes on what it does not say by itself."""
+    notes = []
+    if campaign.ran_away:
+        finding = remarks.after_runaway(finding, *campaign.ran_away, ray.variable)
+    if campaign.exhausted:
+        notes.append(remarks.exhausted(campaign.exhausted, ray.variable))
+    # Along one ray of several a cost may well be flat: another size outweighs it.
+    if plan.budget is not None and len(plan.vary) == 1:
+        notes.append(remarks.flat_cost(finding, log_growth, plan.budget.theta, ray.variable))
+    return finding, tuple(note for note in notes if note)
+
+
+def never_returned(ray: Ray, size: int, allowed: float) -> BodyFailed:
+    """The failure of a test of which no call has come back."""
+    text = (
+        f"no call of this test came back: at its smallest size it was stopped after {allowed / 1e9:.3g} s, half of "
+        "its time limit; raise time_limit or lower smallest, if it is not caught in a loop"
+    )
+    failure = BodyFailed(ray.assign(size))
+    failure.__cause__ = pytest.fail.Exception(text, pytrace=False)
+    return failure
 
 
 def _name(reference: object) -> str:

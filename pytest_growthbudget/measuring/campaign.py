@@ -13,7 +13,7 @@ from collections.abc import Callable, Generator, Sequence
 from dataclasses import dataclass, field
 from typing import TypeVar
 
-from pytest_growthbudget.measuring.guards import Overrun
+from pytest_growthbudget.measuring.guards import Exhausted, Overrun
 from pytest_growthbudget.measuring.readings import (
     Answer,
     Climb,
@@ -76,7 +76,8 @@ class Campaign:
     """One budget's measurement. `run` may be called once.
 
     `take(size, calls)` makes one reading; `footprint(size)` tells the bytes of workload and one call. Either may
-    raise `Overrun`: the sizes below are then judged.
+    raise `Overrun` or `Exhausted`: the sizes below are then judged. `allow(time)` is told how long the calls that
+    follow may take, each: while climbing half of what is left, so that what was read can be judged.
     """
 
     take: Callable[[int, int], Reading]
@@ -84,6 +85,7 @@ class Campaign:
     now: Callable[[], int]
     limits: Limits
     seed: str
+    allow: Callable[[float], None] = lambda nanoseconds: None
     _rng: random.Random = field(init=False)
     _rungs: list[_Rung] = field(init=False, default_factory=list)
     _ideal: float = field(init=False, default=0.0)
@@ -91,7 +93,12 @@ class Campaign:
     _bytes: dict[int, float] = field(init=False, default_factory=dict)
     _ended: str = field(init=False, default="")
     _deadline: float = field(init=False, default=math.inf)
+    _allowance: float = field(init=False, default=math.inf)
     _refined: bool = field(init=False, default=False)
+    #: The size at which a call was stopped, and how long it had been allowed; None where none was.
+    ran_away: tuple[int, float] | None = field(init=False, default=None)
+    #: The size whose workload could not be built for want of memory.
+    exhausted: int | None = field(init=False, default=None)
 
     def __post_init__(self) -> None:
         self._rng = random.Random(self.seed)
@@ -197,6 +204,7 @@ class Campaign:
     def _add(self, size: int) -> None:
         """Take two calls at `size`, the cheaper of which counts, and put it on the ladder."""
         calls = self._calls_at(size)
+        self._may_take(self.left / 2)
         try:
             if not self.limits.clock and not self._rungs:
                 self.take(size, calls)  # what the first call alone imports or caches is no growth
@@ -206,13 +214,24 @@ class Campaign:
                 readings = [self.take(size, calls)]
             if 2 * readings[0].elapsed < self.left:
                 readings.append(self.take(size, calls))
-        except Overrun:
-            self._ended = "runaway"
+        except (Overrun, Exhausted) as cause:
+            self._cut_off(size, cause)
             return
         best = min(readings, key=lambda reading: reading.cost)
         rung = _Rung(size, best.cost, min(r.elapsed for r in readings), calls)
         bisect.insort(self._rungs, rung, key=lambda item: item.size)
         self._weigh(size)
+
+    def _may_take(self, time: float) -> None:
+        self._allowance = time
+        self.allow(time)
+
+    def _cut_off(self, size: int, cause: Overrun | Exhausted) -> None:
+        """Climb no further: the call or the workload of `size` was too much."""
+        if isinstance(cause, Exhausted):
+            self._ended, self.exhausted = "memory", size
+        else:
+            self._ended, self.ran_away = "runaway", (size, self._allowance)
 
     def _below_floor(self, reading: Reading) -> bool:
         return self.limits.clock and reading.cost * reading.calls < self.limits.floor
@@ -274,8 +293,8 @@ class Campaign:
             return
         try:
             self._bytes[size] = self.footprint(size)
-        except Overrun:
-            self._ended = "runaway"
+        except (Overrun, Exhausted) as cause:
+            self._cut_off(size, cause)
 
     def _bytes_at(self, size: int) -> float:
         """Footprint at `size`, log-log through those measured; beyond them at most as a square."""
@@ -297,6 +316,7 @@ class Campaign:
     # ------------------------------------------------------------ rounds
 
     def _rounds(self, request: Rounds) -> Series:
+        self._may_take(math.inf)
         rungs = self._rungs[request.first : request.last]
         wanted = [self._readings_of(rung, request) for rung in rungs]
         costs: list[list[float]] = [[] for _ in rungs]
@@ -311,7 +331,7 @@ class Campaign:
             try:
                 for index in order:
                     costs[index].append(self.take(rungs[index].size, self._calls_at(rungs[index].size)).cost)
-            except Overrun:
+            except (Overrun, Exhausted):
                 complete = False
                 break
         kept = [(rung.size, tuple(cost)) for rung, cost in zip(rungs, costs, strict=True) if cost]
@@ -349,13 +369,14 @@ class Campaign:
             step = max(step, at + 1)
             if 3 * elapsed * (step / at) ** max(self._trend(lambda rung: rung.elapsed), 1.0) > self.left:
                 return None
+            self._may_take(self.left / 2)
             try:
                 first = self.take(step, 1)
                 if step >= size or first.cost > request.cost / 2:
                     second = self.take(step, 1) if 2 * first.elapsed < self.left else first
                     best = min(first, second, key=lambda reading: reading.cost)
-            except Overrun:
-                self._ended = "runaway"
+            except (Overrun, Exhausted) as cause:
+                self._cut_off(step, cause)
                 return None
             points.append((step, first.cost))
             at, elapsed = step, first.elapsed

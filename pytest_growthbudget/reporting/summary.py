@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+import textwrap
 from collections import Counter
 from typing import Any
 
+from pytest_growthbudget.fitting.remarks import FLAT
 from pytest_growthbudget.reporting import units
 from pytest_growthbudget.reporting.failure import first_line
 
@@ -19,9 +21,12 @@ def write_summary(terminal: Any, judged: list[dict[str, Any]]) -> None:
         return
     terminal.section("growth budgets", sep="-")
     for judgement in judged:
-        if verbosity > 0 or judgement["verdict"] in ("undecided", "unmeasured"):
+        doubts = [note for note in judgement["notes"] if note.startswith(FLAT)]
+        if verbosity > 0 or doubts or judgement["verdict"] in ("undecided", "unmeasured"):
             terminal.write_line(f"{judgement['test']}")
             terminal.write_line(f"    {first_line(judgement)}")
+        for note in doubts:
+            terminal.write_line(textwrap.indent(textwrap.fill(note, 76, break_on_hyphens=False), "    "))
     terminal.write_line(total_line(judged))
 
 

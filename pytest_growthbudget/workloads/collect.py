@@ -85,13 +85,18 @@ def reported(item: pytest.Function, settings: Settings) -> pytest.Item:
             raise fault(f"{plan.source}: {error}") from None
         if plan.yardstick is not None:
             check_yardstick(plan.yardstick, item, plan.source)
-    reason = refusal(item.obj)
+    reason = refusal(item)
     if reason:
         raise fault(f"{nodeid}: {reason}")
     names = dict.fromkeys(name for plan in plans for name in plan.size_names)
     unused = [name for name in names if name not in set(internals.names_of_fixtures(item))]
     if unused:
         raise fault(_no_size(nodeid, unused[0], item))
+    if not internals.has_parameters(item):
+        raise fault(
+            f"{nodeid}: this pytest does not see the marker through the decorator above it, "
+            "so no size can be set; put the marker directly on the function"
+        )
     return GrowthItem.in_place_of(item, plans)
 
 
@@ -125,8 +130,14 @@ def meter_of(name: str, config: pytest.Config) -> Meter:
     return meter_for(name, config.stash[own_meters_key], tally=tally)
 
 
-def refusal(function: Any) -> str:
+def refusal(item: pytest.Function) -> str:
     """Why the test function cannot carry a budget, and the way round; "" where it can."""
+    function = item.obj
+    if "subtests" in set(internals.names_of_fixtures(item)):
+        return (
+            "a growth budget cannot stand on a test with subtests, each of which would be reported once a reading; "
+            "parametrize the test, or put the budget on a test without them"
+        )
     if internals.is_async(function):
         return (
             "a growth budget cannot stand on an async test yet; "
@@ -138,6 +149,17 @@ def refusal(function: Any) -> str:
             "put it on a plain test that builds its workload from problem_size"
         )
     return ""
+
+
+def refuse_lambda(collector: pytest.Collector, name: str, found: object) -> None:
+    """Refuse a budget that was called on a lambda: pytest takes that for an argument of the marker, and no test."""
+    if (
+        isinstance(found, pytest.MarkDecorator)
+        and found.name == MARKER
+        and isinstance(collector, pytest.Module | pytest.Class)
+        and collector.funcnamefilter(name)
+    ):
+        raise fault(f"{collector.nodeid}::{name}: a growth budget cannot stand on a lambda; write a test function")
 
 
 def refuse_test_case(collector: pytest.Collector, settings: Settings) -> None:
@@ -161,7 +183,7 @@ def _methods(cls: Any) -> Iterable[tuple[str, Any]]:
 
 
 def _no_size(nodeid: str, name: str, item: pytest.Function) -> str:
-    asked = internals.direct_arguments(item)
+    asked = internals.own_fixtures(item)
     where = (
         f"give it to the fixture that builds the workload ({' or '.join(asked)})"
         if asked

@@ -12,6 +12,7 @@ from pytest_growthbudget.settings import Settings
 if TYPE_CHECKING:
     from types import TracebackType
 
+    from pytest_growthbudget.measuring.guards import Watch
     from pytest_growthbudget.meters.protocol import Meter
 
 #: The settings of the run.
@@ -29,6 +30,8 @@ class Shared:
         self.rng = random.Random(seed)
         self.metered = Metered()
         self.tally: Any = None
+        #: The watch over the test in progress.
+        self.watch: Watch | None = None
 
     def reseed(self, test: str, size: int, reading: int) -> None:
         """Make the next workload a function of the seed, the test, the size and the reading, and of nothing else."""
@@ -78,7 +81,12 @@ class Metered:
         traceback: TracebackType | None,
     ) -> None:
         if self._meter is not None and self._depth == 1:
-            self.cost += self._meter.stop()
+            try:
+                self.cost += self._meter.stop()
+            except Exception:
+                # What the meter has to say of a call that was cut short must not hide why it was.
+                if value is None:
+                    raise
         self._depth -= 1
 
 

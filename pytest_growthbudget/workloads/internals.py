@@ -70,6 +70,21 @@ def tear_down(template: pytest.Function, item: pytest.Item) -> None:
     template.session._setupstate.teardown_exact(item)
 
 
+def forget_sizes(template: pytest.Function, names: Iterable[str]) -> None:
+    """Tear down every fixture that was built from one of the sizes `names`, for whichever test.
+
+    pytest keeps a wide fixture for the next test without asking whether that test overrides what it was built from.
+    """
+    manager: Any = template.session._fixturemanager
+    seen_from = template if pytest.version_tuple >= (8,) else template.nodeid
+    for name in names:
+        overriding = template._fixtureinfo.name2fixturedefs.get(name) or ()
+        overridden = manager.getfixturedefs(name, seen_from) or ()
+        for definition in (*overriding, *overridden):
+            if definition.cached_result is not None:
+                definition.finish(template._request)
+
+
 def is_set_up(template: pytest.Function) -> bool:
     return template in template.session._setupstate.stack
 
@@ -95,6 +110,20 @@ def direct_arguments(template: pytest.Function) -> tuple[str, ...]:
     return template._fixtureinfo.argnames
 
 
+def own_fixtures(template: pytest.Function) -> tuple[str, ...]:
+    """The fixtures that `template` asks for itself and that its project has made."""
+    made = template._fixtureinfo.name2fixturedefs
+    return tuple(
+        name
+        for name in direct_arguments(template)
+        if name in made and not made[name][-1].func.__module__.startswith(("_pytest.", "pytest_growthbudget."))
+    )
+
+
+def has_parameters(item: pytest.Function) -> bool:
+    return hasattr(item, "callspec")
+
+
 def share_stash(template: pytest.Function, item: pytest.Item) -> None:
     """Let fixtures of `template` find what pytest's own plugins keep on `item` (caplog, tmp_path)."""
     template.stash = item.stash
@@ -110,6 +139,12 @@ def forget_output(item: pytest.Item) -> None:
     if logging is not None:
         logging.caplog_handler.clear()
         logging.report_handler.clear()
+
+
+def is_rerun(report: pytest.TestReport) -> bool:
+    """Whether another plugin runs the test again after this report: then the last run is the one that counts."""
+    outcome: str = report.outcome
+    return outcome == "rerun"
 
 
 def is_test_case(collected: object) -> bool:
