@@ -109,7 +109,8 @@ def pytest_runtest_makereport(item: pytest.Item) -> Generator[None, Any, Any]:
 
         report.growth_judgements = [{"test": item.nodeid, **judgement} for judgement in item.judgements]
         report.sections.extend(sections(item.judgements, item.failed_at))
-        properties = properties_of(item.judgements)
+        # What the body recorded itself, it recorded once a reading.
+        properties = [*dict(item.template.user_properties).items(), *properties_of(item.judgements)]
         item.user_properties.extend(properties)
         report.user_properties.extend(properties)
     return report

@@ -64,7 +64,9 @@ class Ratchet:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Settings:
-    """What holds for the whole run. `time_limit` is in seconds a test; `slack` is by meter."""
+    """What holds for the whole run. `time_limit` is in seconds a test, `session_time_limit` in seconds of measuring
+    by this process; `slack` is by meter.
+    """
 
     enabled: bool = True
     confidence: float = 0.95
@@ -75,6 +77,7 @@ class Settings:
     slack: Mapping[str, float] = field(default_factory=dict)
     budgets: tuple[PlacedBudget, ...] = ()
     ratchet: Ratchet | None = None
+    session_time_limit: float | None = None
     from_command_line: frozenset[str] = frozenset()
 
     def slack_of(self, meter: str, *, deterministic: bool = False) -> float:
@@ -202,6 +205,7 @@ def _cost(value: Any) -> float:
 _CHECKS: dict[str, Callable[[Any], Any]] = {
     "confidence": _number(0.5, 1, "a number above 0.5 and below 1"),
     "time_limit": _number(0, math.inf, "a positive number of seconds"),
+    "session_time_limit": _number(0, math.inf, "a positive number of seconds"),
     "undecided": _policy,
     "seed": _whole(0, "a whole number of at least 0"),
     "ordinary_size": _whole(1, "a whole number of at least 1"),
@@ -253,7 +257,17 @@ def read_pyproject(path: Path) -> Settings:
     return _settings(table, path.name)
 
 
-_TABLE_KEYS = ("confidence", "time_limit", "undecided", "seed", "ordinary_size", "slack", "budgets", "ratchet")
+_TABLE_KEYS = (
+    "confidence",
+    "time_limit",
+    "session_time_limit",
+    "undecided",
+    "seed",
+    "ordinary_size",
+    "slack",
+    "budgets",
+    "ratchet",
+)
 
 
 def _settings(table: Any, file: str) -> Settings:
@@ -491,7 +505,12 @@ def resolve(config: pytest.Config) -> Settings:
     """The settings of the run: command line before pyproject.toml before default."""
     settings = read_pyproject(config.rootpath / "pyproject.toml")
     given: dict[str, Any] = {"enabled": config.getoption("--growth") == "on"}
-    for option, name in (("--growth-seed", "seed"), ("--growth-time-limit", "time_limit")):
+    options = {
+        "--growth-seed": "seed",
+        "--growth-time-limit": "time_limit",
+        "--growth-session-time-limit": "session_time_limit",
+    }
+    for option, name in options.items():
         value = config.getoption(option)
         if value is not None:
             given[name] = _checked(name, value, option)
