@@ -30,6 +30,9 @@ from pytest_growthbudget.workloads import sizes as sizing
 Result = TypeVar("Result")
 
 MS = 1e6  # nanoseconds
+#: A meter that is no clock needs no more sizes than this above its floor, nor more than this in all.
+ENOUGH_COUNTED = 20
+MOST_COUNTED = 40
 #: At most this factor in cost is foreseen for one step of a look-ahead.
 RISK_OF_PEEK = 30.0
 
@@ -146,7 +149,9 @@ class Campaign:
             return True
         top = self._rungs[-1]
         if not self.limits.clock:
-            return top.elapsed < self.limits.dear or len(self._rungs) < request.at_least
+            counted = sum(rung.cost >= self.limits.floor for rung in self._rungs)
+            cheap = top.elapsed < self.limits.dear and len(self._rungs) < MOST_COUNTED
+            return (cheap and counted < ENOUGH_COUNTED) or len(self._rungs) < request.at_least
         if top.cost > request.cost:
             return False
         enough = sum(rung.cost * rung.calls >= self.limits.floor for rung in self._rungs)
