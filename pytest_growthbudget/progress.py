@@ -55,7 +55,8 @@ class Display:
     def _write(self, text: str) -> None:
         # Not by the terminal writer itself, which would take the text for a part of pytest's current line.
         file = self._reporter._tw._file
-        with self._config.pluginmanager.get_plugin("capturemanager").global_and_fixture_disabled():
+        capturing: Any = self._config.pluginmanager.get_plugin("capturemanager")
+        with capturing.global_and_fixture_disabled():
             file.write(text)
             file.flush()
 
