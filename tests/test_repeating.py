@@ -342,6 +342,24 @@ def test_off_runs_each_test_once_at_the_ordinary_size(suite: pytest.Pytester) ->
     )
 
 
+def test_off_keeps_below_the_largest_size_of_a_test(suite: pytest.Pytester) -> None:
+    suite.makepyfile(
+        test_it="""
+        import pytest
+
+        @pytest.mark.growth_budget("2^n", largest=12)
+        def test_steep(problem_size):
+            assert problem_size == 12
+
+        def test_plain(problem_size):
+            assert problem_size == 100
+        """
+    )
+    result = suite.runpytest("--growth", "off", "-v")
+    result.assert_outcomes(passed=2)
+    result.stdout.fnmatch_lines(["test_it.py::test_steep PASSED*"])
+
+
 def test_the_size_may_be_any_fixture_or_argument(suite: pytest.Pytester) -> None:
     suite.makepyfile(
         test_it="""

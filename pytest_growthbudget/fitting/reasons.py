@@ -78,6 +78,14 @@ def too_few(ladder: Ladder, count: int, needed: int) -> str:
     return f"{sizes} could be read where {needed} are needed: {_SHORT_OF.get(ladder.ended, _SHORT_OF[''])}"
 
 
+def runaway(size: int) -> str:
+    """Why a ladder that ended with a call which did not come back is no ground for keeping a budget."""
+    return (
+        f"up to n = {size} the budget is kept, but a call at the next size did not come back within the time limit; "
+        "raise `time_limit`, or look at what the body does there"
+    )
+
+
 def low(size: int, cost: float) -> str:
     """Why a ladder that time cut off is no ground for saying that the budget is kept."""
     return f"the largest size reached is n = {size}, where a call takes {cost / 1e3:.0f} us: too little to go by"

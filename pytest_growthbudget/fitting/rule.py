@@ -236,6 +236,8 @@ class _Clock:
     def within(self, *, deflated: bool = False) -> Finding:
         evidence, limits = self.judged(), self.run.limits
         sizes, costs = evidence.seen.sizes, evidence.seen.costs
+        if self.run.ladder.ended == "runaway":
+            return self.conclude("undecided", reasons.runaway(self.run.ladder.sizes[-1]))
         if self.run.ladder.ended == "time" and costs[-1] < LOW_TOP and sizes[-1] < SHORT_SPAN * sizes[0]:
             return self.conclude("undecided", reasons.out_of_time(reasons.low(int(sizes[-1]), float(costs[-1]))))
         return self.conclude("within", reasons.within(evidence, limits, deflated=deflated), memory=deflated)

@@ -30,6 +30,8 @@ from pytest_growthbudget.workloads import sizes as sizing
 Result = TypeVar("Result")
 
 MS = 1e6  # nanoseconds
+#: A body whose cost hardly grows, on a workload that hardly does, would be climbed for ever.
+MOST_CLIMBED = 44
 #: A meter that is no clock needs no more sizes than this above its floor, nor more than this in all.
 ENOUGH_COUNTED = 20
 MOST_COUNTED = 40
@@ -152,7 +154,7 @@ class Campaign:
             counted = sum(rung.cost >= self.limits.floor for rung in self._rungs)
             cheap = top.elapsed < self.limits.dear and len(self._rungs) < MOST_COUNTED
             return (cheap and counted < ENOUGH_COUNTED) or len(self._rungs) < request.at_least
-        if top.cost > request.cost:
+        if top.cost > request.cost or len(self._rungs) >= MOST_CLIMBED:
             return False
         enough = sum(rung.cost * rung.calls >= self.limits.floor for rung in self._rungs)
         return enough < request.at_least or self._bytes_at(top.size) <= request.footprint
@@ -372,7 +374,8 @@ class Campaign:
             growth = max(math.log(points[-1][1] / points[-2][1]) / math.log(at / points[-2][0]), 0.5)
             step = min(step, int(at * RISK_OF_PEEK ** (1 / growth)))
             step = max(step, at + 1)
-            if 3 * elapsed * (step / at) ** max(self._trend(lambda rung: rung.elapsed), 1.0) > self.left:
+            growth_of_all = max(self._trend(lambda rung: rung.elapsed), 1.0)
+            if 3 * elapsed * min((step / at) ** growth_of_all, RISK_OF_PEEK) > self.left:
                 return None
             self._may_take(self.left / 2)
             try:

@@ -10,6 +10,8 @@ from pytest_growthbudget.meters import clocks
 
 #: Elapsed time over CPU time from which on the machine counts as busy.
 BUSY = 1.5
+#: Elapsed time over CPU time below which several threads were at work.
+THREADED = 0.8
 
 
 def distortions(meter: str) -> tuple[str, ...]:
@@ -50,7 +52,16 @@ def _module_of(function: object) -> str:
 
 def busy(ratios: Sequence[float], meter: str) -> tuple[str, ...]:
     """A note where elapsed time ran far ahead of CPU time; `ratios`: elapsed over CPU time, one a reading."""
-    if len(ratios) < 5 or statistics.median(ratios) < BUSY:
+    if len(ratios) < 5:
+        return ()
+    if meter == "cpu_time" and statistics.median(ratios) < THREADED:
+        return (
+            (
+                "CPU time ran ahead of elapsed time: several threads worked at once, and how many may depend on the size; "
+                "for numpy set OMP_NUM_THREADS=1 before it is imported."
+            ),
+        )
+    if statistics.median(ratios) < BUSY:
         return ()
     times = f"{statistics.median(ratios):.1f}"
     if meter == "wall_time":

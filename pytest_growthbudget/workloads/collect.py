@@ -28,17 +28,20 @@ def fault(text: str) -> pytest.Collector.CollectError:
 
 def give_sizes(metafunc: pytest.Metafunc, settings: Settings) -> None:
     """Reserve a hidden parameter for each size name of a test that carries a budget."""
+    size = ordinary_size(metafunc.definition, settings)
+    # A fixture gives its own ordinary size where budgets are off, unless that is too large for the test.
+    given = settings.enabled or size < settings.ordinary_size
     names = [
         name
         for name in size_names(metafunc.definition, settings)
-        if name in metafunc.fixturenames and (settings.enabled or name not in metafunc._arg2fixturedefs)
+        if name in metafunc.fixturenames and (given or name not in metafunc._arg2fixturedefs)
     ]
     if not names:
         return
     try:
         metafunc.parametrize(
             names,
-            [(settings.ordinary_size,) * len(names)],
+            [(size,) * len(names)],
             ids=[internals.hide_id()],
             scope="session",
         )
@@ -49,6 +52,13 @@ def give_sizes(metafunc: pytest.Metafunc, settings: Settings) -> None:
             f"{metafunc.definition.nodeid}: {' or '.join(names)} is parametrized already; a growth budget sets "
             "the sizes itself: take that parametrization away, or budget another size with vary=..."
         ) from None
+
+
+def ordinary_size(definition: pytest.Item, settings: Settings) -> int:
+    """The size of a test's one run where it is not measured: the ordinary one, or its `largest` if that is less."""
+    limits = [mark.kwargs.get("largest") for mark in definition.iter_markers(MARKER)]
+    limits += [p.arguments.get("largest") for p in settings.budgets if p.may_match(definition.nodeid)]
+    return min([settings.ordinary_size, *(limit for limit in limits if isinstance(limit, int))])
 
 
 def size_names(definition: pytest.Item, settings: Settings) -> tuple[str, ...]:

@@ -86,6 +86,11 @@ def test_a_later_climb_goes_on_where_the_first_stopped() -> None:
     assert high.costs[-1] > 30 * MS >= high.costs[-2]
 
 
+def test_a_body_whose_cost_does_not_grow_is_not_climbed_for_ever() -> None:
+    ladder = climb(Bench(lambda n: 6_000.0, held=lambda n: 500.0))
+    assert len(ladder.sizes) <= 50
+
+
 def test_quarter_octaves_where_half_octaves_give_too_few_sizes() -> None:
     ladder = climb(Bench(lambda n: 5.0 * n**3))
     usable = ladder.sizes[ladder.readable :]
@@ -253,7 +258,9 @@ def test_no_look_ahead_past_the_largest_size() -> None:
 
 def test_a_deterministic_meter_is_read_once_and_climbs_by_the_time_a_reading_takes() -> None:
     bench = Bench(lambda n: float(n), build=lambda n: 1e3 * n)
-    ladder, series = bench.campaign(clock=False, dear=30 * MS, floor=10.0).run(asks(Climb(math.inf, at_least=12), Rounds(0, 99)))
+    ladder, series = bench.campaign(clock=False, dear=30 * MS, floor=10.0).run(
+        asks(Climb(math.inf, at_least=12), Rounds(0, 99))
+    )
     assert len(ladder.sizes) >= 12
     assert ladder.costs[ladder.readable - 1] < 10.0 <= ladder.costs[ladder.readable]
     assert {len(costs) for costs in series.costs} == {1}

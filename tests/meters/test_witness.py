@@ -39,6 +39,12 @@ def test_a_coarse_clock_is_named(monkeypatch: pytest.MonkeyPatch) -> None:
 def test_a_busy_machine_is_named() -> None:
     assert witness.busy([1.0, 1.1, 1.0, 1.2, 9.0], "cpu_time") == ()
     assert witness.busy([3.0] * 4, "cpu_time") == (), "too few readings to say"
+    assert witness.busy([0.5] * 9, "cpu_time") == (
+        (
+            "CPU time ran ahead of elapsed time: several threads worked at once, and how many may depend on the size; "
+            "for numpy set OMP_NUM_THREADS=1 before it is imported."
+        ),
+    )
     assert witness.busy([3.0] * 9, "cpu_time") == (
         "elapsed time was 3.0 times CPU time: the machine was busy, or the body waits, which is not read.",
     )
