@@ -445,8 +445,8 @@ def test_metered_without_a_block_is_unmeasured(suite: pytest.Pytester) -> None:
     result.stdout.fnmatch_lines(
         [
             (
-                "growth budget unmeasured: cpu_time against n: the test asks for `metered` but ran no code inside `with "
-                "metered:`; put the code that the budget is about into that block"
+                "growth budget unmeasured: cpu_time against n: the test asks for `metered` but ran no code inside "
+                "`with metered:`; put the code that the budget is about into that block"
             )
         ]
     )

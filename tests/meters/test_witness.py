@@ -50,7 +50,7 @@ def test_a_busy_machine_is_named() -> None:
     )
     assert witness.busy([3.0] * 9, "wall_time") == (
         (
-            "elapsed time was 3.0 times the CPU time of this process: either the body waits, as wall_time is meant for, "
-            "or the machine was busy, and then these readings are too long."
+            "elapsed time was 3.0 times the CPU time of this process: either the body waits, as wall_time is meant "
+            "for, or the machine was busy, and then these readings are too long."
         ),
     )
