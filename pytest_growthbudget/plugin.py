@@ -84,10 +84,10 @@ def pytest_generate_tests(metafunc: pytest.Metafunc) -> None:
 
 @pytest.hookimpl(wrapper=True, tryfirst=True)
 def pytest_pycollect_makeitem(collector: pytest.Collector, name: str, obj: object) -> Generator[None, Any, Any]:
-    made = yield
     settings = collector.config.stash[settings_key]
     if settings.enabled:
         collect.refuse_lambda(collector, name, obj)
+    made = yield
     if isinstance(made, list):
         return [collect.reported(item, settings) if isinstance(item, pytest.Function) else item for item in made]
     if made is not None and settings.enabled and internals.is_test_case(made):

@@ -81,8 +81,10 @@ class Metered:
         traceback: TracebackType | None,
     ) -> None:
         if self._meter is not None and self._depth == 1:
+            from pytest_growthbudget.meters.protocol import checked_cost
+
             try:
-                self.cost += self._meter.stop()
+                self.cost += checked_cost(self._meter, self._meter.stop())
             except Exception:
                 # What the meter has to say of a call that was cut short must not hide why it was.
                 if value is None:

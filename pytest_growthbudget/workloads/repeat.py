@@ -19,7 +19,7 @@ import pytest
 
 from pytest_growthbudget.measuring.guards import Exhausted, Overrun
 from pytest_growthbudget.meters import clocks
-from pytest_growthbudget.meters.protocol import MeterError
+from pytest_growthbudget.meters.protocol import MeterError, checked_cost
 from pytest_growthbudget.workloads import internals
 from pytest_growthbudget.workloads.fixtures import shared_key
 
@@ -244,7 +244,9 @@ class Repeater:
                 )
             del arguments
         elapsed = clocks.wall_time_ns() - began
-        return Taken(cost=cost / calls, calls=calls, wall=wall / calls, cpu=cpu / calls, elapsed=elapsed)
+        return Taken(
+            cost=checked_cost(meter, cost) / calls, calls=calls, wall=wall / calls, cpu=cpu / calls, elapsed=elapsed
+        )
 
     def footprint(self, size: int) -> float:
         """Bytes at peak of building the workload of `size` and one call, by tracemalloc."""
