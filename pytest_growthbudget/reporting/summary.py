@@ -22,6 +22,7 @@ def write_summary(terminal: Any, judged: list[dict[str, Any]]) -> None:
     if verbosity < 0:
         terminal.write_line(total_line(judged))
         return
+    terminal.ensure_newline()
     terminal.section("growth budgets", sep="-")
     for judgement in judged:
         doubts = [note for note in judgement["notes"] if note.startswith(FLAT)]

@@ -20,6 +20,9 @@ class Terminal:
     def get_verbosity(self) -> int:
         return self.verbosity
 
+    def ensure_newline(self) -> None:
+        pass
+
     def section(self, title: str, sep: str) -> None:
         self.lines.append(f"{sep} {title}")
 
