@@ -181,4 +181,4 @@ def overhead_ns(looks: int = 5) -> float:
 
 def _nothing() -> None:
     for _ in range(100):
-        pass  # noqa: E701 - one line, so that nothing but the line itself is counted
+        pass
