@@ -18,6 +18,7 @@ from pytest_growthbudget.auditing.target import Sizer, Target, TargetError, inne
 from pytest_growthbudget.auditing.toll import Toll, Work, excess_over, hidden_toll, is_flat, toll_of, work_by_size
 from pytest_growthbudget.auditing.watching import CallMeter
 from pytest_growthbudget.bounds.budget import Budget, parse_budget
+from pytest_growthbudget.fitting.judgement import Interval
 from pytest_growthbudget.meters import clocks
 from pytest_growthbudget.meters.protocol import MeterError
 
@@ -223,11 +224,16 @@ def _toll_and_work(calls: Calls, counts_steps: bool, timed: CallMeter | None) ->
     return steps, toll_of(steps)
 
 
-def _observed(seen: Pattern | None, toll: Toll, budget: Budget | None, excess: Any, variable: str) -> Observed:
+def _observed(
+    seen: Pattern | None, toll: Toll, budget: Budget | None, excess: Interval | None, variable: str
+) -> Observed:
     terms = observe_terms(seen, variable) if seen is not None else ()
     recurrence = budget.recurrence if budget is not None else None
     nearest = toll.nearest if variable == "n" else _renamed(toll.nearest, variable)
-    if recurrence is not None and excess is not None and excess.low <= 0 <= excess.high:
+    as_declared = excess is not None and (
+        excess.low <= 0 <= excess.high or (toll.hidden and excess.low > 0 and compare.keeps_toll(toll, excess))
+    )
+    if recurrence is not None and as_declared:
         # What was declared is as good a name for the toll as any that is consistent with it.
         text = compare.toll_text(recurrence)
         nearest = "1" if text == "0" else text

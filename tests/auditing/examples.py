@@ -461,8 +461,8 @@ def between(low: int, high: int) -> int:
     return high - low
 
 
-#: Twins whose fault is out of the lines' sight need large inputs, and time.
-LARGE = ("merge sort, pops from the front",)
+#: These take long: work out of the lines' sight needs large inputs.
+LARGE = ("merge sort, pops from the front", "Strassen, eight products")
 
 SOUND = (
     Example(

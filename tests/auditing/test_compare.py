@@ -162,6 +162,14 @@ def test_the_toll_is_judged_by_its_excess(excess: Interval | None, agrees: bool 
     assert held("T(n) = 2 T(n/2) + n", 64, halves, LINEAR, excess)[-1].agrees is agrees
 
 
+@pytest.mark.parametrize(("estimate", "agrees"), [(0.35, True), (0.6, False)])
+def test_time_is_given_what_memory_may_add(estimate: float, agrees: bool) -> None:
+    hidden = Toll(exponent=ONE, nearest="n", unit="ns", hidden=True)
+    excess = Interval(estimate=estimate, low=estimate - 0.1, high=estimate + 0.1)
+    assert held("T(n) = 2 T(n/2) + n", 64, halves, hidden, excess)[-1].agrees is agrees
+    assert held("T(n) = 2 T(n/2) + n", 64, halves, LINEAR, excess)[-1].agrees is False
+
+
 def test_a_toll_of_nothing_means_a_constant_one() -> None:
     check = held("T(n) = 2 T(n/2)", 64, halves, LINEAR, ONE)[-1]
     assert (check.declared, check.agrees) == ("0", False)
