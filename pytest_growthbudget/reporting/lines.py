@@ -13,7 +13,7 @@ STEEP = 5.0
 
 
 #: What a line that takes longer each time may call; the trace sees none of it.
-INSIDE = "inside what it calls: `in`, a slice, pop(0), sorted(), a library, and the like"
+INSIDE = "inside what it calls: `in`, a slice, pop(0), sorted(), a library"
 
 
 def describe(lines: Sequence[dict[str, Any]], variable: str, width: int) -> list[str]:
