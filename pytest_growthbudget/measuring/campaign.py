@@ -213,7 +213,7 @@ class Campaign:
         calls = self._calls_at(size)
         self._may_take(self.left / 2)
         try:
-            if not self.limits.clock and not self._rungs:
+            if not self._rungs:
                 self.take(size, calls)  # what the first call alone imports or caches is no growth
             readings = [self.take(size, calls)]
             if self.limits.repeatable and self._below_floor(readings[0]):
@@ -276,7 +276,9 @@ class Campaign:
 
     def _ladder(self) -> Ladder:
         rungs = self._rungs
-        readable = next((i for i, rung in enumerate(rungs) if rung.cost * rung.calls >= self.limits.floor), len(rungs))
+        long = [rung.cost * rung.calls >= self.limits.floor for rung in rungs]
+        # One long reading among short ones is noise.
+        readable = next((i for i in range(len(rungs)) if all(long[i : i + 2])), len(rungs))
         return Ladder(
             sizes=tuple(rung.size for rung in rungs),
             costs=tuple(rung.cost for rung in rungs),
