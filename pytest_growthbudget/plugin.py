@@ -86,7 +86,7 @@ def pytest_generate_tests(metafunc: pytest.Metafunc) -> None:
 def pytest_pycollect_makeitem(collector: pytest.Collector, name: str, obj: object) -> Generator[None, Any, Any]:
     settings = collector.config.stash[settings_key]
     if settings.enabled:
-        collect.refuse_lambda(collector, name, obj)
+        collect.refuse_misplaced(collector, name, obj)
     made = yield
     if isinstance(made, list):
         return [collect.reported(item, settings) if isinstance(item, pytest.Function) else item for item in made]

@@ -6,7 +6,6 @@ Bodies are counted by steps where the verdict matters, so that it does not depen
 from __future__ import annotations
 
 import signal
-import sys
 
 import pytest
 
@@ -128,16 +127,15 @@ def test_a_workload_that_memory_cannot_hold_ends_the_climb(suite: pytest.Pyteste
 def large(problem_size):
     if problem_size > 1000:
         raise MemoryError
-    return range(problem_size)
+    return [None] * problem_size
 
-@pytest.mark.growth_budget("n", meter="steps")
-def test_sum(large):
-    for number in large: number + 1
+@pytest.mark.growth_budget("n^2", meter="steps")
+def test_walk(large):
+    for number in large: number
 
-@pytest.mark.growth_budget("n^2", meter="steps", undecided="fail", slack=0.01)
-def test_square(large):
-    for number in large:
-        for other in large: other
+@pytest.mark.growth_budget("n^2")
+def test_walk_by_the_clock(large):
+    for number in large: number
 """,
         "--growth-records=out.jsonl",
         passed=2,
@@ -289,16 +287,14 @@ def test_environment(numbers, monkeypatch):
     monkeypatch.setenv("GROWTH", str(len(numbers)))
     walk(numbers)
 
-@pytest.mark.growth_budget(bound="n", meter="cpu_time", largest=128)
+@pytest.mark.growth_budget("n^3", meter="cpu_time", undecided="fail")
 def test_time_is_read_all_the_same(numbers, monkeypatch):
     monkeypatch.setattr(time, "process_time_ns", lambda: 0)
-    [n * n for n in numbers for _ in range(50)]
+    for _ in range(100): sum(numbers)
 """,
         passed=7,
     )
-    assert "7 growth budgets: " in text
-    assert "unmeasured" not in text
-    assert "exceeded" not in text
+    assert "7 growth budgets: 7 within" in text
 
 
 def test_records_are_written_where_the_run_began(suite: pytest.Pytester) -> None:
@@ -550,7 +546,11 @@ def test_uses(problem_size):
 def test_a_test_that_returns(suite: pytest.Pytester) -> None:
     run(
         suite,
-        '@pytest.mark.growth_budget("n", meter="steps", largest=64)\ndef test_returns(numbers):\n    return len(numbers)',
+        """
+@pytest.mark.growth_budget("n", meter="steps", largest=64)
+def test_returns(numbers):
+    return len(numbers)
+""",
         passed=1,
     )
 
@@ -571,14 +571,10 @@ def test_a_marker_on_a_lambda(suite: pytest.Pytester) -> None:
     assert "test_bad.py::test_it: a growth budget cannot stand on a lambda; write a test function" in text
 
 
-def test_a_marker_on_a_fixture_is_pytests_own_matter(suite: pytest.Pytester) -> None:
-    suite.makepyfile(
-        test_it='import pytest\n@pytest.mark.growth_budget("n")\n@pytest.fixture\ndef it(): ...\ndef test_it(it): ...'
-    )
-    result = suite.runpytest()
-    text = result.stdout.str()
-    assert "Marks applied to fixtures have no effect" in text or "Marks cannot be applied to fixtures" in text
-    assert "INTERNALERROR" not in text
+@pytest.mark.filterwarnings("ignore:Marks applied to fixtures")
+def test_a_marker_on_a_fixture(suite: pytest.Pytester) -> None:
+    text = refused(suite, '@pytest.mark.growth_budget("n")\n@pytest.fixture\ndef it(): ...\ndef test_it(it): ...')
+    assert "a growth budget cannot stand on a fixture" in text or "Marks cannot be applied to fixtures" in text
 
 
 def test_async_generators_and_generators(suite: pytest.Pytester) -> None:

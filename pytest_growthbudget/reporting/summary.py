@@ -18,7 +18,8 @@ ORDER = ("within", "exceeded", "undecided", "unmeasured")
 
 def write_summary(terminal: Any, judged: list[dict[str, Any]]) -> None:
     """Write the summary of `judged` (wire form, each with its `test`) to pytest's terminal reporter."""
-    verbosity = terminal.config.get_verbosity() if hasattr(terminal.config, "get_verbosity") else 0
+    config = terminal.config
+    verbosity = config.get_verbosity() if hasattr(config, "get_verbosity") else config.option.verbose  # before 8.0
     if verbosity < 0:
         terminal.write_line(total_line(judged))
         return

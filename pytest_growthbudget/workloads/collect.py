@@ -161,8 +161,12 @@ def refusal(item: pytest.Function) -> str:
     return ""
 
 
-def refuse_lambda(collector: pytest.Collector, name: str, found: object) -> None:
-    """Refuse a budget that was called on a lambda: pytest takes that for an argument of the marker, and no test."""
+def refuse_misplaced(collector: pytest.Collector, name: str, found: object) -> None:
+    """Refuse a budget on a fixture, which some versions of pytest ignore in silence, and one called on a lambda, which
+    pytest takes for an argument of the marker.
+    """
+    if internals.is_fixture(found) and any(mark.name == MARKER for mark in getattr(found, "pytestmark", ())):
+        raise fault(f"{collector.nodeid}::{name}: a growth budget cannot stand on a fixture; put it on the test")
     if (
         isinstance(found, pytest.MarkDecorator)
         and found.name == MARKER

@@ -141,6 +141,11 @@ def forget_output(item: pytest.Item) -> None:
         logging.report_handler.clear()
 
 
+def is_fixture(found: object) -> bool:
+    """Whether `found` in a module is a fixture, for a pytest that leaves it a function (before 8.4)."""
+    return inspect.isfunction(found) and hasattr(found, "_pytestfixturefunction")
+
+
 def is_rerun(report: pytest.TestReport) -> bool:
     """Whether another plugin runs the test again after this report: then the last run is the one that counts."""
     outcome: str = report.outcome
