@@ -135,7 +135,7 @@ def test_walk(large):
 
 @pytest.mark.growth_budget("n^2")
 def test_walk_by_the_clock(large):
-    for number in large: number
+    for number in large: str(number)
 """,
         "--growth-records=out.jsonl",
         passed=2,
