@@ -57,8 +57,8 @@ def busy(ratios: Sequence[float], meter: str) -> tuple[str, ...]:
     if meter == "cpu_time" and statistics.median(ratios) < THREADED:
         return (
             (
-                "CPU time ran ahead of elapsed time: several threads worked at once, and how many may depend on the size; "
-                "for numpy set OMP_NUM_THREADS=1 before it is imported."
+                "CPU time ran ahead of elapsed time: several threads worked at once, and how many may depend on the "
+                "size; for numpy set OMP_NUM_THREADS=1 before it is imported."
             ),
         )
     if statistics.median(ratios) < BUSY:

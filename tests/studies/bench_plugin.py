@@ -59,7 +59,7 @@ def test_pairs(numbers):
     sum(1 for a in numbers for b in numbers if a < b)
 """
 
-PER_READING = '''
+PER_READING = """
 import pytest
 from pytest_growthbudget import trial
 
@@ -73,9 +73,9 @@ def test_nothing(workload):
 
 def test_report():
     from pytest_growthbudget.workloads.repeat import Repeater
-'''
+"""
 
-READER = '''
+READER = """
 import statistics, sys
 import pytest
 from pytest_growthbudget import trial
@@ -98,7 +98,7 @@ def time_readings(item):
 
 trial.hold = time_readings
 sys.exit(pytest.main(["-q", "-s", "-p", "no:cacheprovider", "test_reading.py"]))
-'''
+"""
 
 
 def seconds_of(command: list[str], folder: Path) -> float:
@@ -117,7 +117,7 @@ def plain_run(folder: Path, repeats: int = 9) -> None:
     added = statistics.median(a - b for a, b in zip(with_plugin, without, strict=True))
     spread = statistics.stdev(without)
     print(f"500 unmarked tests: {statistics.median(without):.3f} s without the plugin; the plugin adds")
-    print(f"    {1e3 * added:+.1f} ms (median of {repeats} pairs; run to run the plain suite varies by {1e3 * spread:.0f} ms)")
+    print(f"    {1e3 * added:+.1f} ms (median of {repeats} pairs; the plain suite varies by {1e3 * spread:.0f} ms)")
 
 
 def reading(folder: Path) -> None:
