@@ -499,6 +499,36 @@ def test_plain(wide, kind):
     )
 
 
+def test_a_session_does_not_grow_by_its_repetitions(suite: pytest.Pytester) -> None:
+    run(
+        suite,
+        """
+closed = []
+
+@pytest.fixture(scope="session")
+def register():
+    yield
+    closed.append("register")
+
+@pytest.fixture(scope="session")
+def table(register, problem_size):
+    yield
+    closed.append("table")
+
+@pytest.mark.growth_budget("n", meter="steps", largest=256)
+def test_walks(numbers, workload_rng, register, table):
+    for number in numbers: number
+
+def test_afterwards(request):
+    closed.clear()
+    stack = request.session._setupstate.stack
+    assert sum(len(finalizers) for finalizers, _ in stack.values()) < 12
+    stack[request.session][0].insert(0, lambda: print("closed:", *closed))
+""",
+        passed=2,
+    )
+
+
 # ------------------------------------------------------------ where a marker may stand
 
 

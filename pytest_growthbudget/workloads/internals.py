@@ -9,6 +9,7 @@ import inspect
 from typing import TYPE_CHECKING, Any
 
 import pytest
+from _pytest.fixtures import FixtureDef
 from _pytest.tmpdir import tmppath_result_key
 
 if TYPE_CHECKING:
@@ -108,6 +109,37 @@ def requested_by(template: pytest.Function, fixture: str) -> tuple[str, ...]:
 
 def direct_arguments(template: pytest.Function) -> tuple[str, ...]:
     return template._fixtureinfo.argnames
+
+
+def let_go(template: pytest.Function) -> None:
+    """Drop what the repetitions of `template` have left behind: its last workload, and finalizers said many times.
+
+    Each repetition registers the finalizers of wider fixtures anew, with their nodes and with the fixtures that they
+    were built from. One of each is enough; thousands hold as many requests in memory until the session ends.
+    """
+    template._initrequest()
+    for finalizers, _ in template.session._setupstate.stack.values():
+        finalizers[:] = _first_of_each(finalizers)
+    for definitions in template._fixtureinfo.name2fixturedefs.values():
+        for definition in definitions:
+            definition._finalizers[:] = _first_of_each(definition._finalizers)
+
+
+def _first_of_each(finalizers: Iterable[Any]) -> list[Any]:
+    """`finalizers` without those that finish a fixture which an earlier one finishes."""
+    kept: dict[int, Any] = {}
+    for finalizer in finalizers:
+        fixture = _finished_by(finalizer)
+        kept.setdefault(id(finalizer) if fixture is None else id(fixture), finalizer)
+    return list(kept.values())
+
+
+def _finished_by(finalizer: Any) -> FixtureDef[Any] | None:
+    """The fixture that `finalizer` finishes, if that is what it does: a partial, or a lambda before pytest 8."""
+    reached = [getattr(getattr(finalizer, "func", None), "__self__", None)]
+    if pytest.version_tuple < (8,):
+        reached += [cell.cell_contents for cell in getattr(finalizer, "__closure__", None) or ()]
+    return next((each for each in reached if isinstance(each, FixtureDef)), None)
 
 
 def own_fixtures(template: pytest.Function) -> tuple[str, ...]:

@@ -107,6 +107,7 @@ class GrowthItem(pytest.Item):
                     internals.tear_down(self.template, self)
             finally:
                 internals.forget_sizes(self.template, names)
+                internals.let_go(self.template)
 
     def repr_failure(self, excinfo: pytest.ExceptionInfo[BaseException], style: Any = None) -> Any:
         return self.template.repr_failure(excinfo)

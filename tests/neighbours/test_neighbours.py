@@ -313,6 +313,13 @@ def test_a_rerun_that_passes_is_the_one_that_counts(suite: pytest.Pytester) -> N
     result.stdout.fnmatch_lines(["1 growth budget: 1 within*", "*1 passed, 1 rerun*"])
 
 
+@needs("pytest_repeat")
+def test_repeat(suite: pytest.Pytester) -> None:
+    result = suite.runpytest_subprocess("--count", "2", *without())
+    result.assert_outcomes(passed=4, failed=2)
+    result.stdout.fnmatch_lines(["4 growth budgets: 2 within, 2 exceeded*"])
+
+
 ASYNC = """
 import pytest
 
