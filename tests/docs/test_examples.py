@@ -30,9 +30,7 @@ def examples() -> list[tuple[str, str, dict[str, int], str]]:
 
 
 @pytest.mark.parametrize(("label", "name", "outcome", "code"), examples(), ids=lambda value: str(value)[:40])
-def test_an_example_runs(
-    pytester: pytest.Pytester, label: str, name: str, outcome: dict[str, int], code: str
-) -> None:
+def test_an_example_runs(pytester: pytest.Pytester, label: str, name: str, outcome: dict[str, int], code: str) -> None:
     (pytester.path / name).write_text(code)
     pytester.runpytest("-W", "default").assert_outcomes(**outcome)
 
