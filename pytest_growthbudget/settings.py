@@ -74,6 +74,7 @@ class Settings:
     undecided: str = "warn"
     seed: int = 1
     ordinary_size: int = 100
+    scout: bool = False
     slack: Mapping[str, float] = field(default_factory=dict)
     budgets: tuple[PlacedBudget, ...] = ()
     ratchet: Ratchet | None = None
@@ -109,6 +110,7 @@ class Plan:
     yardstick: Callable[..., Any] | None = None
     at: int | None = None
     ceiling: float | None = None
+    scout: bool = False
     ratchet: Ratchet | None = None
     audit: Any = None
     size_of: Any = None
@@ -185,6 +187,12 @@ def _audited(value: Any) -> Any:
     return value
 
 
+def _switch(value: Any) -> bool:
+    if not isinstance(value, bool):
+        raise ValueError("true or false")
+    return value
+
+
 #: The units in which a ceiling may be given, in the units of the meters.
 _UNITS = {"ns": 1.0, "us": 1e3, "ms": 1e6, "s": 1e9, "min": 60e9, "h": 3600e9}
 _UNITS |= {"B": 1.0, "kB": 1e3, "MB": 1e6, "GB": 1e9, "KiB": 2.0**10, "MiB": 2.0**20, "GiB": 2.0**30}
@@ -217,6 +225,7 @@ _CHECKS: dict[str, Callable[[Any], Any]] = {
     "at": _whole(2, "a whole number of at least 2"),
     "yardstick": _function,
     "cost": _cost,
+    "scout": _switch,
     "accepted": _text,
     "audit": _audited,
     "size_of": _audited,
@@ -267,6 +276,7 @@ _TABLE_KEYS = (
     "slack",
     "budgets",
     "ratchet",
+    "scout",
 )
 
 
@@ -339,6 +349,7 @@ def growth_budget(
     undecided: str | None = None,
     at: int | None = None,
     cost: str | float | None = None,
+    scout: bool | None = None,
     audit: Callable[..., Any] | str | None = None,
     size_of: Callable[..., float] | str | None = None,
 ) -> None:
@@ -403,6 +414,7 @@ def plan_of(args: tuple[Any, ...], kwargs: Mapping[str, Any], settings: Settings
         yardstick=given.get("yardstick"),
         at=given.get("at"),
         ceiling=given.get("cost"),
+        scout=given.get("scout", settings.scout),
         ratchet=settings.ratchet,
         audit=given.get("audit"),
         size_of=given.get("size_of"),

@@ -14,6 +14,7 @@ from pytest_growthbudget.fitting.scale import allowed, on_one_scale
 from pytest_growthbudget.measuring.campaign import Campaign, Limits
 from pytest_growthbudget.measuring.guards import Watch
 from pytest_growthbudget.measuring.readings import MemoryCurve, Promise
+from pytest_growthbudget.measuring.scout import USABLE, Scouted
 from pytest_growthbudget.measuring.yardstick import YardstickGrowth
 from pytest_growthbudget.meters import clocks
 from pytest_growthbudget.meters.protocol import MeterError, close_meter
@@ -159,8 +160,9 @@ def _judge_ray(item: GrowthItem, plan: Plan, ray: Ray, time_limit: float, forget
     )
     underway(item.config).begin(item, plan, ray, meter.unit, time_limit)
     take = Taker(repeater, meter, forget, plan.yardstick, reference)
+    scouted = Scouted(take, lambda: campaign.left / 2, clocks.wall_time_ns)
     campaign = Campaign(
-        take=watched(take, underway(item.config)),
+        take=watched(scouted if plan.scout and USABLE else take, underway(item.config)),
         footprint=repeater.footprint,
         now=clocks.wall_time_ns,
         limits=Limits(
