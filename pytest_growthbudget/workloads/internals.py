@@ -77,7 +77,7 @@ def forget_sizes(template: pytest.Function, names: Iterable[str]) -> None:
     pytest keeps a wide fixture for the next test without asking whether that test overrides what it was built from.
     """
     manager: Any = template.session._fixturemanager
-    seen_from = template if pytest.version_tuple >= (8,) else template.nodeid
+    seen_from = template if pytest.version_tuple >= (8, 1) else template.nodeid
     for name in names:
         overriding = template._fixtureinfo.name2fixturedefs.get(name) or ()
         overridden = manager.getfixturedefs(name, seen_from) or ()
@@ -135,9 +135,9 @@ def _first_of_each(finalizers: Iterable[Any]) -> list[Any]:
 
 
 def _finished_by(finalizer: Any) -> FixtureDef[Any] | None:
-    """The fixture that `finalizer` finishes, if that is what it does: a partial, or a lambda before pytest 8."""
+    """The fixture that `finalizer` finishes, if that is what it does: a partial, or a lambda before pytest 9."""
     reached = [getattr(getattr(finalizer, "func", None), "__self__", None)]
-    if pytest.version_tuple < (8,):
+    if pytest.version_tuple < (9,):
         reached += [cell.cell_contents for cell in getattr(finalizer, "__closure__", None) or ()]
     return next((each for each in reached if isinstance(each, FixtureDef)), None)
 
@@ -174,8 +174,9 @@ def forget_output(item: pytest.Item) -> None:
 
 
 def is_fixture(found: object) -> bool:
-    """Whether `found` in a module is a fixture, for a pytest that leaves it a function (before 8.4)."""
-    return inspect.isfunction(found) and hasattr(found, "_pytestfixturefunction")
+    """Whether `found` in a module is a fixture: a function that is known for one before pytest 8.4."""
+    known = inspect.isfunction(found) and hasattr(found, "_pytestfixturefunction")
+    return known or type(found).__name__ == "FixtureFunctionDefinition"
 
 
 def is_rerun(report: pytest.TestReport) -> bool:
