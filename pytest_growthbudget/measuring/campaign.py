@@ -59,7 +59,7 @@ class Limits:
     repeatable: bool = False
     clock: bool = True
     floor: float = 5_000.0
-    batch: float = 20_000.0
+    batch: float = 200_000.0
     dear: float = 30 * MS
     per_size: float = 4 * MS
     per_size_elapsed: float = 30 * MS

@@ -221,6 +221,9 @@ class Repeater:
                     cost = metered.cost
                 else:
                     rest = range(calls - 1)
+                    if rest and not meter.deterministic:
+                        # The caches are cold after building and collecting, the more so the larger the workload.
+                        function(**arguments)
                     cpu, wall = clocks.cpu_time_ns(), clocks.wall_time_ns()
                     meter.start()
                     try:
