@@ -41,14 +41,20 @@ def no_tracer():
     sys.settrace(held)
 
 
+@pytest.fixture(autouse=True)
+def no_collector():
+    """As in a campaign: what other packages hang on the garbage collector must not be counted."""
+    gc.collect()
+    gc.disable()
+    yield
+    gc.enable()
+
+
 def steps(body) -> int:
     meter = Steps()
-    # As in a campaign: what others hang on the collector must not be counted.
-    gc.disable()
     meter.start()
     body()
     count = meter.stop()
-    gc.enable()
     assert type(count) is float
     assert count == int(count)
     return int(count) - 2  # this function's own lines between start and stop; the campaign's do not count
