@@ -428,7 +428,8 @@ def test_metered_limits_what_is_read(suite: pytest.Pytester) -> None:
     )
     result = suite.runpytest("-v")
     result.assert_outcomes(passed=1)
-    result.stdout.fnmatch_lines(["1 growth budget: 1 within*"])
+    result.stdout.fnmatch_lines(["1 growth budget: 1 *"])
+    result.stdout.no_fnmatch_line("*exceeded*")
 
 
 def test_metered_without_a_block_is_unmeasured(suite: pytest.Pytester) -> None:
@@ -482,7 +483,7 @@ def test_a_quadratic_body_is_reported(suite: pytest.Pytester, extra: tuple[str, 
         r"growth budget exceeded: cpu_time grows as n\^(1\.[4-9]\d|2\.[0-2]\d) where n is allowed", lines[0]
     )
     result.stdout.fnmatch_lines(
-        ["*- growth budget -*", "  declared   n", "  observed   n^*", "2 growth budgets: 1 within, 1 exceeded*"]
+        ["*- growth budget -*", "  declared   n", "  observed   n^*", "2 growth budgets: *1 exceeded*"]
     )
     start = next(i for i, line in enumerate(result.outlines) if "- growth budget -" in line)
     report = result.outlines[start : result.outlines.index("", start + 20)]
