@@ -11,6 +11,7 @@ from typing import Any
 import pytest
 
 from pytest_growthbudget import settings as settings_module
+from pytest_growthbudget.checks import SettingsError
 from pytest_growthbudget.underway import Underway, underway_key
 from pytest_growthbudget.workloads import collect, internals
 from pytest_growthbudget.workloads.fixtures import (
@@ -63,7 +64,7 @@ def pytest_configure(config: pytest.Config) -> None:
     config.addinivalue_line("markers", settings_module.marker_line())
     try:
         settings = settings_module.resolve(config)
-    except settings_module.SettingsError as error:
+    except SettingsError as error:
         raise pytest.UsageError(str(error)) from None
     config.stash[settings_key] = settings
     config.stash[shared_key] = Shared(settings.ordinary_size, settings.seed)
