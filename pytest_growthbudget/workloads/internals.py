@@ -101,12 +101,6 @@ def names_of_fixtures(template: pytest.Function) -> Iterable[str]:
     return template._fixtureinfo.names_closure
 
 
-def requested_by(template: pytest.Function, fixture: str) -> tuple[str, ...]:
-    """The names that the fixture `fixture` of `template` asks for in its turn."""
-    found = template._fixtureinfo.name2fixturedefs.get(fixture)
-    return found[-1].argnames if found else ()
-
-
 def direct_arguments(template: pytest.Function) -> tuple[str, ...]:
     return template._fixtureinfo.argnames
 
