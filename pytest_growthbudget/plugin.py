@@ -12,7 +12,7 @@ import pytest
 
 from pytest_growthbudget import settings as settings_module
 from pytest_growthbudget.checks import SettingsError
-from pytest_growthbudget.underway import Underway, underway_key
+from pytest_growthbudget.running.underway import Underway, underway_key
 from pytest_growthbudget.workloads import collect, internals
 from pytest_growthbudget.workloads.fixtures import (
     Shared,
@@ -72,7 +72,7 @@ def pytest_configure(config: pytest.Config) -> None:
     config.stash[underway_key] = Underway(config)
     config.pluginmanager.register(config.stash[underway_key], "growthbudget-underway")
     if config.getoption("--growth-records") or config.getoption("--growth-page") or settings.ratchet:
-        from pytest_growthbudget import keeping
+        from pytest_growthbudget.running import keeping
 
         if keeping.wanted(config, settings):
             config.pluginmanager.register(keeping.Keeper(config, settings), "growthbudget-keeper")

@@ -17,7 +17,7 @@ LIGHT = [
     "pytest_growthbudget",
     "pytest_growthbudget.plugin",
     "pytest_growthbudget.settings",
-    "pytest_growthbudget.trial",
+    "pytest_growthbudget.running.trial",
 ]
 LIGHT += ["pytest_growthbudget.bounds.budget", "pytest_growthbudget.reporting.wire", "pytest_growthbudget.__main__"]
 

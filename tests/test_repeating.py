@@ -498,7 +498,7 @@ def test_the_footprint_is_that_of_the_workload_whatever_its_scope(suite: pytest.
     suite.makeconftest(
         f"""
         import pytest
-        from pytest_growthbudget import trial
+        from pytest_growthbudget.running import trial
         from pytest_growthbudget.measuring.guards import Watch
         from pytest_growthbudget.meters.clocks import CpuTime
         from pytest_growthbudget.workloads.repeat import Repeater

@@ -91,7 +91,7 @@ class GrowthItem(pytest.Item):
         return self.template.funcargs
 
     def runtest(self) -> None:
-        from pytest_growthbudget.trial import hold
+        from pytest_growthbudget.running.trial import hold
 
         # A plugin may run an item again.
         self.judgements.clear()

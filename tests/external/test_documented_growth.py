@@ -36,7 +36,7 @@ import numpy as np
 import pytest
 
 import pytest_growthbudget.fitting.rule
-import pytest_growthbudget.trial  # noqa: F401 - what is imported here need not be imported by each inner run
+import pytest_growthbudget.running.trial  # noqa: F401 - what is imported here need not be imported by each inner run
 
 LOOK_UPS = 1000
 

@@ -9,12 +9,12 @@ from typing import Any
 
 import pytest
 
-from pytest_growthbudget import ratchet
 from pytest_growthbudget.__main__ import main
 from pytest_growthbudget.reporting import drift, risen
 from pytest_growthbudget.reporting.accepted import load_accepted, to_accept
 from pytest_growthbudget.reporting.environment import environment
 from pytest_growthbudget.reporting.records import read_records
+from pytest_growthbudget.running import ratchet
 from pytest_growthbudget.settings import Ratchet
 from tests.reporting.samples import ENVIRONMENT, SIZES, judgement, real_records, record, write
 

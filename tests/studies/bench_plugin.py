@@ -61,7 +61,7 @@ def test_pairs(numbers):
 
 PER_READING = """
 import pytest
-from pytest_growthbudget import trial
+from pytest_growthbudget.running import trial
 
 @pytest.fixture
 def workload(problem_size):
@@ -78,7 +78,7 @@ def test_report():
 READER = """
 import statistics, sys
 import pytest
-from pytest_growthbudget import trial
+from pytest_growthbudget.running import trial
 from pytest_growthbudget.measuring.guards import Watch
 from pytest_growthbudget.meters.clocks import CpuTime, wall_time_ns
 from pytest_growthbudget.workloads.repeat import Repeater, collector_spared, warnings_apart

@@ -13,9 +13,9 @@ from typing import TYPE_CHECKING, Any
 import pytest
 
 from pytest_growthbudget.meters import clocks
-from pytest_growthbudget.progress import Display
 from pytest_growthbudget.reporting import units
 from pytest_growthbudget.reporting.interrupted import Unfinished, describe
+from pytest_growthbudget.running.progress import Display
 
 if TYPE_CHECKING:
     from pytest_growthbudget.settings import Plan

@@ -19,9 +19,9 @@ from pytest_growthbudget.measuring.yardstick import YardstickGrowth
 from pytest_growthbudget.meters import clocks
 from pytest_growthbudget.meters.protocol import MeterError, close_meter
 from pytest_growthbudget.reporting.wire import to_wire
-from pytest_growthbudget.session_limit import judged as judged_in_time
-from pytest_growthbudget.taking import Taker
-from pytest_growthbudget.underway import underway, watched
+from pytest_growthbudget.running.session_limit import judged as judged_in_time
+from pytest_growthbudget.running.taking import Taker
+from pytest_growthbudget.running.underway import underway, watched
 from pytest_growthbudget.workloads.collect import meter_of
 from pytest_growthbudget.workloads.fixtures import settings_key, shared_key
 from pytest_growthbudget.workloads.rays import Ray, rays
@@ -56,7 +56,7 @@ def hold(item: GrowthItem) -> None:
             try:
                 judgement = judged_in_time(item, plan, forget, judge_plan)
                 if judgement.verdict == "exceeded":
-                    from pytest_growthbudget.hotspots import with_lines
+                    from pytest_growthbudget.running.hotspots import with_lines
 
                     judgement = with_lines(item, plan, judgement, forget)
                 wire = against_accepted(item, plan, to_wire(judgement, undecided=plan.undecided), forget)
@@ -64,7 +64,7 @@ def hold(item: GrowthItem) -> None:
                 failure = error
                 break
             if plan.audit is not None:
-                from pytest_growthbudget.audited import audit_test
+                from pytest_growthbudget.running.audited import audit_test
 
                 wire["audit"] = audit_test(item, plan, judgement, forget)
             item.ihook.pytest_growthbudget_judged(item=item, judgement=judgement)
@@ -86,7 +86,7 @@ def against_accepted(
     """The judgement in wire form with what the ratchet says of it, where it is switched on."""
     if plan.ratchet is None:
         return judgement
-    from pytest_growthbudget import ratchet
+    from pytest_growthbudget.running import ratchet
 
     def again() -> dict[str, Any]:
         return to_wire(judge_plan(item, replace(plan, seed=plan.seed + 1), forget))

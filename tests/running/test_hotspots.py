@@ -7,7 +7,7 @@ import re
 import pytest
 
 from pytest_growthbudget.fitting.judgement import Judgement, SizeRow
-from pytest_growthbudget.hotspots import pair
+from pytest_growthbudget.running.hotspots import pair
 
 CONFTEST = """
     import pytest

@@ -11,7 +11,7 @@ from pytest_growthbudget.fitting.judgement import Judgement
 from pytest_growthbudget.measuring.guards import Watch
 from pytest_growthbudget.meters.clocks import WallTime
 from pytest_growthbudget.meters.protocol import MeterError
-from pytest_growthbudget.underway import underway
+from pytest_growthbudget.running.underway import underway
 from pytest_growthbudget.workloads.fixtures import settings_key, shared_key
 from pytest_growthbudget.workloads.rays import rays
 from pytest_growthbudget.workloads.repeat import GrowthItem, Repeater

@@ -12,11 +12,11 @@ from typing import Any
 
 import pytest
 
-from pytest_growthbudget.ratchet import accepted_of
 from pytest_growthbudget.reporting.environment import environment, run_facts
 from pytest_growthbudget.reporting.extra import missing_libraries
 from pytest_growthbudget.reporting.files import reason, replace_file
 from pytest_growthbudget.reporting.records import NotWritten, Record, RecordsFile, record_of
+from pytest_growthbudget.running.ratchet import accepted_of
 from pytest_growthbudget.settings import Settings
 from pytest_growthbudget.workloads import internals
 

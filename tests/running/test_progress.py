@@ -11,15 +11,15 @@ from typing import Any
 
 import pytest
 
-from pytest_growthbudget import progress
-from pytest_growthbudget.progress import Display
+from pytest_growthbudget.running import progress
+from pytest_growthbudget.running.progress import Display
 
 pty = pytest.importorskip("pty")
 
 #: Reads for long enough to be shown, by showing at once.
 CONFTEST = """
     import pytest
-    from pytest_growthbudget import progress
+    from pytest_growthbudget.running import progress
 
     progress.PATIENCE = progress.APART = 0.0
 """

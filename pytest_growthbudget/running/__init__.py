@@ -1,0 +1,1 @@
+"""One run of pytest: what ties the rooms together for a budgeted test, and what the run keeps."""
