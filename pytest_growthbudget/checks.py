@@ -7,11 +7,9 @@ import math
 from collections.abc import Callable, Iterable, Mapping
 from typing import Any
 
+from pytest_growthbudget.settings import SettingsError
+
 POLICIES = ("warn", "fail", "pass")
-
-
-class SettingsError(Exception):
-    """A setting that cannot be used. The message is whole: source, what is wrong, what was expected."""
 
 
 def nearest(name: str, known: Iterable[str]) -> str:

@@ -1,4 +1,5 @@
-"""pytest's hooks, and nothing else. Imports pytest and the standard library only: a run without budgets pays nothing.
+"""pytest's hooks for any run, and nothing else. What only a budgeted test needs is imported when one is collected, and
+its hooks stand in `running.hooks`: a run without budgets pays next to nothing.
 
 PYTEST_DONT_REWRITE
 """
@@ -10,10 +11,7 @@ from typing import Any
 
 import pytest
 
-from pytest_growthbudget import settings as settings_module
-from pytest_growthbudget.checks import SettingsError
-from pytest_growthbudget.running.underway import Underway, underway_key
-from pytest_growthbudget.workloads import collect, internals
+from pytest_growthbudget.settings import MARKER, MARKER_LINE, SettingsError, resolve
 from pytest_growthbudget.workloads.fixtures import (
     Shared,
     metered,
@@ -23,7 +21,6 @@ from pytest_growthbudget.workloads.fixtures import (
     tally,
     workload_rng,
 )
-from pytest_growthbudget.workloads.repeat import GrowthItem
 
 __all__ = ["metered", "problem_size", "tally", "workload_rng"]
 
@@ -61,16 +58,14 @@ def pytest_addoption(parser: pytest.Parser) -> None:
 
 
 def pytest_configure(config: pytest.Config) -> None:
-    config.addinivalue_line("markers", settings_module.marker_line())
+    config.addinivalue_line("markers", MARKER_LINE)
     try:
-        settings = settings_module.resolve(config)
+        settings = resolve(config)
     except SettingsError as error:
         raise pytest.UsageError(str(error)) from None
     config.stash[settings_key] = settings
     config.stash[shared_key] = Shared(settings.ordinary_size, settings.seed)
     config.pluginmanager.register(Ledger(), "growthbudget-ledger")
-    config.stash[underway_key] = Underway(config)
-    config.pluginmanager.register(config.stash[underway_key], "growthbudget-underway")
     if config.getoption("--growth-records") or config.getoption("--growth-page") or settings.ratchet:
         from pytest_growthbudget.running import keeping
 
@@ -80,48 +75,53 @@ def pytest_configure(config: pytest.Config) -> None:
 
 @pytest.hookimpl(trylast=True)
 def pytest_generate_tests(metafunc: pytest.Metafunc) -> None:
-    collect.give_sizes(metafunc, metafunc.config.stash[settings_key])
+    settings = metafunc.config.stash[settings_key]
+    if settings.budgets or MARKER in metafunc.definition.keywords:
+        from pytest_growthbudget.workloads.collect import give_sizes
+
+        give_sizes(metafunc, settings)
 
 
 @pytest.hookimpl(wrapper=True, tryfirst=True)
 def pytest_pycollect_makeitem(collector: pytest.Collector, name: str, obj: object) -> Generator[None, Any, Any]:
     settings = collector.config.stash[settings_key]
-    if settings.enabled:
-        collect.refuse_misplaced(collector, name, obj)
+    if settings.enabled and _carries_a_budget(obj):
+        from pytest_growthbudget.workloads.collect import refuse_misplaced
+
+        refuse_misplaced(collector, name, obj)
     made = yield
     if isinstance(made, list):
-        return [collect.reported(item, settings) if isinstance(item, pytest.Function) else item for item in made]
-    if made is not None and settings.enabled and internals.is_test_case(made):
-        collect.refuse_test_case(made, settings)
+        if settings.budgets or any(MARKER in item.keywords for item in made):
+            from pytest_growthbudget.running.hooks import register
+            from pytest_growthbudget.workloads.collect import reported
+
+            register(collector.config)
+            return [reported(item, settings) if isinstance(item, pytest.Function) else item for item in made]
+    elif settings.enabled and isinstance(made, pytest.Class):
+        from pytest_growthbudget.workloads.internals import is_test_case
+
+        if is_test_case(made):
+            from pytest_growthbudget.workloads.collect import refuse_test_case
+
+            refuse_test_case(made, settings)
     return made
+
+
+def _carries_a_budget(found: object) -> bool:
+    """Whether `found` in a module is a marked function or fixture, or the marker itself."""
+    if isinstance(found, pytest.MarkDecorator):
+        return found.name == MARKER
+    marks = getattr(found, "pytestmark", ()) if type(found).__name__ in _MARKED else ()
+    return any(mark.name == MARKER for mark in marks)
+
+
+#: Types whose attributes can be asked for without waking a lazy object of the user's.
+_MARKED = ("function", "FixtureFunctionDefinition")
 
 
 def pytest_runtest_setup(item: pytest.Item) -> None:
     if "workload_rng" in getattr(item, "fixturenames", ()):
         item.config.stash[shared_key].reseed(item.nodeid, item.config.stash[settings_key].ordinary_size, 0)
-
-
-@pytest.hookimpl(wrapper=True)
-def pytest_runtest_makereport(item: pytest.Item) -> Generator[None, Any, Any]:
-    report = yield
-    if report.when == "call" and isinstance(item, GrowthItem):
-        from pytest_growthbudget.reporting.failure import sections
-        from pytest_growthbudget.reporting.properties import properties_of
-
-        report.growth_judgements = [{"test": item.nodeid, **judgement} for judgement in item.judgements]
-        report.sections.extend(sections(item.judgements, item.failed_at))
-        # What the body recorded itself, it recorded once a reading.
-        properties = [*dict(item.template.user_properties).items(), *properties_of(item.judgements)]
-        item.user_properties.extend(properties)
-        report.user_properties.extend(properties)
-    return report
-
-
-def pytest_enter_pdb(config: pytest.Config) -> None:
-    # Whoever debugs a body takes the time that it takes.
-    watch = config.stash[shared_key].watch
-    if watch is not None:
-        watch.stand_back()
 
 
 def pytest_report_header(config: pytest.Config) -> str | None:
@@ -141,8 +141,12 @@ class Ledger:
         self.judged: list[dict[str, Any]] = []
 
     def pytest_runtest_logreport(self, report: pytest.TestReport) -> None:
-        if not internals.is_rerun(report):
-            self.judged.extend(getattr(report, "growth_judgements", ()))
+        judgements = getattr(report, "growth_judgements", ())
+        if judgements:
+            from pytest_growthbudget.workloads.internals import is_rerun
+
+            if not is_rerun(report):
+                self.judged.extend(judgements)
 
     def pytest_terminal_summary(self, terminalreporter: Any) -> None:
         if self.judged:

@@ -6,6 +6,7 @@ from pathlib import Path
 
 import pytest
 
+from pytest_growthbudget import plans
 from pytest_growthbudget import settings as s
 
 HEARS = """
@@ -211,9 +212,9 @@ def test_command_line_before_pyproject(pytester: pytest.Pytester) -> None:
     config = pytester.parseconfig("--growth-time-limit", "2", "--rootdir", str(path.parent))
     settings = s.resolve(config)
     assert (settings.time_limit, settings.seed) == (2.0, 7)
-    plan = s.plan_of((), {"bound": "n"}, settings, "a test")
+    plan = plans.plan_of((), {"bound": "n"}, settings, "a test")
     assert plan.time_limit == 2.0
-    assert s.plan_of((), {"bound": "n", "time_limit": 5}, settings, "a test").time_limit == 5.0
+    assert plans.plan_of((), {"bound": "n", "time_limit": 5}, settings, "a test").time_limit == 5.0
 
 
 def test_the_marker_is_registered_with_its_signature(pytester: pytest.Pytester) -> None:
@@ -221,4 +222,4 @@ def test_the_marker_is_registered_with_its_signature(pytester: pytest.Pytester) 
         line for line in pytester.runpytest("--markers").outlines if line.startswith("@pytest.mark.growth_budget")
     )
     assert line.startswith("@pytest.mark.growth_budget(bound, *, yardstick=None, meter='cpu_time', vary=None, ")
-    assert all(f"{name}=" in line for name in s.marker_arguments()[1:])
+    assert all(f"{name}=" in line for name in plans.marker_arguments()[1:])

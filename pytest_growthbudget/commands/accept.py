@@ -64,8 +64,7 @@ def accept_command(arguments: Sequence[str], out: TextIO, error: TextIO) -> int:
 
 def _configured(error: TextIO) -> Path | None:
     """The file that pyproject.toml in this directory or above names."""
-    from pytest_growthbudget.checks import SettingsError
-    from pytest_growthbudget.settings import read_pyproject
+    from pytest_growthbudget.settings import SettingsError, read_pyproject
 
     here = Path.cwd()
     for folder in (here, *here.parents):

@@ -19,7 +19,7 @@ from pytest_growthbudget.workloads.repeat import BodyFailed, GrowthItem, Repeate
 
 if TYPE_CHECKING:
     from pytest_growthbudget.fitting.judgement import Judgement
-    from pytest_growthbudget.settings import Plan
+    from pytest_growthbudget.plans import Plan
 
 #: Sizes are climbed until this many calls are recorded.
 ENOUGH_CALLS: Final = 8000

@@ -24,7 +24,7 @@ from pytest_growthbudget.workloads.rays import rays
 from pytest_growthbudget.workloads.repeat import GrowthItem, Repeater
 
 if TYPE_CHECKING:
-    from pytest_growthbudget.settings import Plan
+    from pytest_growthbudget.plans import Plan
 
 #: The largest cost, by unit, of a body that is run under the trace: it then takes some 0.3 s.
 AFFORDABLE: Final = {"ns": 20e6, "steps": 150_000.0}

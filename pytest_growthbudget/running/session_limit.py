@@ -17,7 +17,7 @@ from pytest_growthbudget.workloads.rays import rays
 from pytest_growthbudget.workloads.repeat import GrowthItem, Repeater
 
 if TYPE_CHECKING:
-    from pytest_growthbudget.settings import Plan
+    from pytest_growthbudget.plans import Plan
 
 Judge = Callable[["GrowthItem", "Plan", Callable[[], None]], Judgement]
 #: Seconds below which measuring is not begun: a verdict seldom takes less.

@@ -34,7 +34,7 @@ from pytest_growthbudget.workloads.repeat import (
 )
 
 if TYPE_CHECKING:
-    from pytest_growthbudget.settings import Plan
+    from pytest_growthbudget.plans import Plan
 
 #: The memory curve of this machine by its key, once it was needed: it outlives a run within one process.
 _curves: dict[str, MemoryCurve] = {}

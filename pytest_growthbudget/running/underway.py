@@ -18,7 +18,7 @@ from pytest_growthbudget.reporting.interrupted import Unfinished, describe
 from pytest_growthbudget.running.progress import Display
 
 if TYPE_CHECKING:
-    from pytest_growthbudget.settings import Plan
+    from pytest_growthbudget.plans import Plan
     from pytest_growthbudget.workloads.rays import Ray
     from pytest_growthbudget.workloads.repeat import GrowthItem
 

@@ -10,9 +10,9 @@ from typing import Any
 
 import pytest
 
-from pytest_growthbudget.checks import SettingsError
 from pytest_growthbudget.meters.protocol import Meter, MeterError
-from pytest_growthbudget.settings import MARKER, Settings, marks_apply, plans_for
+from pytest_growthbudget.plans import marks_apply, plans_for
+from pytest_growthbudget.settings import MARKER, Settings, SettingsError
 from pytest_growthbudget.workloads import internals
 from pytest_growthbudget.workloads.fixtures import shared_key
 from pytest_growthbudget.workloads.repeat import GrowthItem, given_to_yardstick

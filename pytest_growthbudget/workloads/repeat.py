@@ -26,7 +26,7 @@ from pytest_growthbudget.workloads.fixtures import shared_key
 if TYPE_CHECKING:
     from pytest_growthbudget.measuring.guards import Watch
     from pytest_growthbudget.meters.protocol import Meter
-    from pytest_growthbudget.settings import Plan
+    from pytest_growthbudget.plans import Plan
 
 #: Fixtures of this package: asking for them does not make a workload.
 OUR_FIXTURES = frozenset({"metered", "tally", "workload_rng"})
