@@ -33,17 +33,31 @@ def test_what_a_run_without_budgets_imports_is_light(module: str) -> None:
     assert run(f"import sys, {module}; print([name for name in {HEAVY} if name in sys.modules])") == "[]"
 
 
-def test_a_run_without_budgets_imports_nothing_heavy(pytester: pytest.Pytester) -> None:
+def test_a_run_without_budgets_imports_nothing_heavy_and_little_of_this_package(pytester: pytest.Pytester) -> None:
     pytester.makepyfile(
         f"""
         import sys
 
-        def test_plain():
+        import pytest
+
+        @pytest.fixture
+        def value():
+            return 1
+
+        class TestPlain:
+            def test_plain(self, value):
+                assert value
+
+        @pytest.mark.parametrize("number", [1, 2])
+        def test_no_more_is_imported(number):
+            ours = [name for name in sys.modules if name.startswith("pytest_growthbudget.")]
             assert [name for name in {HEAVY} if name in sys.modules] == []
-            assert "pytest_growthbudget.plugin" in sys.modules
+            assert sorted(name.removeprefix("pytest_growthbudget.") for name in ours) == [
+                "hookspecs", "plugin", "settings", "workloads", "workloads.fixtures", "workloads.internals",
+            ]
         """
     )
-    pytester.runpytest_subprocess("-p", "no:hypothesispytest").assert_outcomes(passed=1)
+    pytester.runpytest_subprocess("-p", "no:hypothesispytest").assert_outcomes(passed=3)
 
 
 #: Modules that need what is not there everywhere: sys.monitoring, or the extra `page`.

@@ -28,6 +28,8 @@ if TYPE_CHECKING:
     from pytest_growthbudget.meters.protocol import Meter
     from pytest_growthbudget.plans import Plan
 
+#: Readings after which what they left behind is dropped: collecting garbage before each next one walks over it.
+LET_GO_EVERY = 50
 #: Fixtures of this package: asking for them does not make a workload.
 OUR_FIXTURES = frozenset({"metered", "tally", "workload_rng"})
 
@@ -157,6 +159,8 @@ class Repeater:
     def _set_up(self, size: int) -> Iterator[dict[str, object]]:
         sizes = self._assign(size)
         self._readings += 1
+        if self._readings % LET_GO_EVERY == 0:
+            internals.let_go(self._template)
         internals.forget_output(self._item)
         internals.set_params(self._template, sizes)
         self._shared.reseed(self._item.nodeid, size, self._readings)
