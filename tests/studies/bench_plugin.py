@@ -6,6 +6,7 @@ body, time of one fit, and seconds to verdict for clear cases.
 
 from __future__ import annotations
 
+import os
 import re
 import resource
 import statistics
@@ -101,7 +102,8 @@ sys.exit(pytest.main(["-q", "-s", "-p", "no:cacheprovider", "test_reading.py"]))
 def cpu_seconds_of(command: list[str], folder: Path) -> float:
     """CPU time of a process: what other work on the machine takes is not in it."""
     before = resource.getrusage(resource.RUSAGE_CHILDREN)
-    subprocess.run(command, cwd=folder, check=True, capture_output=True)
+    alone = {**os.environ, "PYTEST_DISABLE_PLUGIN_AUTOLOAD": "1"}
+    subprocess.run(command, cwd=folder, check=True, capture_output=True, env=alone)
     after = resource.getrusage(resource.RUSAGE_CHILDREN)
     return after.ru_utime + after.ru_stime - before.ru_utime - before.ru_stime
 
@@ -111,8 +113,8 @@ def plain_run(folder: Path, repeats: int = 15) -> None:
     base = [sys.executable, "-m", "pytest", "-q", "-p", "no:cacheprovider", "test_plain.py"]
     with_plugin, without = [], []
     for _ in range(repeats):
-        without.append(cpu_seconds_of([*base, "-p", "no:growthbudget"], folder))
-        with_plugin.append(cpu_seconds_of(base, folder))
+        without.append(cpu_seconds_of(base, folder))
+        with_plugin.append(cpu_seconds_of([*base, "-p", "pytest_growthbudget.plugin"], folder))
     added = 1e3 * (min(with_plugin) - min(without))
     spread = 1e3 * (statistics.median(without) - min(without))
     print(f"500 unmarked tests: {min(without):.3f} s of CPU time without the plugin; the plugin adds")
