@@ -118,9 +118,7 @@ def plain_run(folder: Path, repeats: int = 15) -> None:
     added = 1e3 * (min(with_plugin) - min(without))
     spread = 1e3 * (statistics.median(without) - min(without))
     print(f"500 unmarked tests: {min(without):.3f} s of CPU time without the plugin; the plugin adds")
-    print(
-        f"    {added:+.1f} ms (least of {repeats} each; the median of the plain runs is {spread:.0f} ms above their least)"
-    )
+    print(f"    {added:+.1f} ms (least of {repeats} each; the plain median is {spread:.0f} ms above the least)")
 
 
 def reading(folder: Path) -> None:
