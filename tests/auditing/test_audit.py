@@ -17,7 +17,8 @@ from pytest_growthbudget.auditing.target import TargetError
 from pytest_growthbudget.bounds.budget import parse_budget
 from pytest_growthbudget.bounds.language import BoundError
 from pytest_growthbudget.reporting.audit import blame, first_line
-from tests.auditing.examples import fibonacci, hanoi, insertion_merge_sort, merge_sort, quicksort_first
+from tests.auditing.recursions.others import fibonacci, hanoi
+from tests.auditing.recursions.sorting import insertion_merge_sort, merge_sort, quicksort_first
 
 ITEMS = random.Random(1).sample(range(512), 512)
 

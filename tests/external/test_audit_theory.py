@@ -16,25 +16,20 @@ import pytest
 from pytest_growthbudget.auditing.observed import observe_terms
 from pytest_growthbudget.auditing.pattern import Pattern, pattern
 from pytest_growthbudget.auditing.toll import toll_of, work_by_size
-from tests.auditing.examples import (
-    between,
-    factors,
-    fibonacci,
-    hanoi,
+from tests.auditing.examples import between, factors, matrices
+from tests.auditing.made import recorded
+from tests.auditing.recursions.others import fibonacci, hanoi, search
+from tests.auditing.recursions.products import karatsuba, strassen
+from tests.auditing.recursions.sorting import (
     insertion_merge_sort,
-    karatsuba,
-    matrices,
     merge_sort,
     merge_sort_in_place,
     quickselect,
     quicksort,
     quicksort_first,
     quicksort_uneven,
-    search,
     select,
-    strassen,
 )
-from tests.auditing.made import recorded
 
 
 @pytest.fixture(autouse=True)
