@@ -94,7 +94,13 @@ def plan_of(args: tuple[Any, ...], kwargs: Mapping[str, Any], settings: Settings
         raise SettingsError(f"{source}: growth_budget takes one bound; got {len(args)}: stack one marker a budget")
     if args and "bound" in kwargs:
         raise SettingsError(f"{source}: growth_budget got its bound twice")
-    budget = _budget(args[0] if args else kwargs.get("bound"), kwargs.get("yardstick"), source)
+    bound, yardstick = args[0] if args else kwargs.get("bound"), kwargs.get("yardstick")
+    if bound is None and yardstick is None and kwargs.get("audit") is not None:
+        raise SettingsError(
+            f"{source}: growth_budget needs a bound to audit against; "
+            "pytest_growthbudget.audit(function, ...) finds the recurrence that a function follows"
+        )
+    budget = _budget(bound, yardstick, source)
 
     given = {key: checked(key, value, source) for key, value in kwargs.items() if key != "bound" and value is not None}
     meter = given.get("meter", "cpu_time")

@@ -266,7 +266,7 @@ def _priors(kind: NDArray[np.intp], *, with_growth: bool) -> Array:
     return np.choose(kind, (_PRIOR_OF_NO_OFFSET, each, never))
 
 
-@lru_cache(maxsize=512)
+@lru_cache(maxsize=32)
 def _whitening(regressor: tuple[float, ...]) -> tuple[Array, Array]:
     """Inverse Cholesky factors, shape (k, m, m), and log determinants, (k,), of I + share · walk."""
     x = np.array(regressor)

@@ -125,6 +125,10 @@ def test_an_audit_that_cannot_be_made_says_why_and_fails_nothing(pytester: pytes
         ('growth_budget("n", audit="test_it:slowsort")', "*test_it has nothing named 'slowsort'*"),
         ('growth_budget("n", audit=len)', "*audit=len has no Python code whose calls could be watched*"),
         (
+            "growth_budget(audit=quicksort)",
+            "*growth_budget needs a bound to audit against; pytest_growthbudget.audit(function, ...)*",
+        ),
+        (
             'growth_budget("n", size_of=len)',
             "*size_of gives the sizes of an audited function; say which: audit=...*",
         ),
