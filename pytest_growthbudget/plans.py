@@ -71,7 +71,25 @@ def growth_budget(
     audit: Callable[..., Any] | str | None = None,
     size_of: Callable[..., float] | str | None = None,
 ) -> None:
-    """The signature of the marker; called by nobody."""
+    """The signature of the marker; called by nobody.
+
+    Args:
+        bound: What is promised: a bound, a recurrence, or a function of the size.
+        yardstick: What is promised, as a reference: the body grows no faster than this function on the same workload.
+        meter: Which cost is read; a test may have one budget a meter.
+        vary: Which fixture or argument gives each variable of the bound (its one variable: `problem_size`).
+        smallest: The smallest size tried.
+        largest: The largest size tried; at least twice `smallest`.
+        slack: The excess that is tolerated, an exponent of n (by meter).
+        confidence: The confidence of the intervals.
+        time_limit: Seconds that this budget may take.
+        undecided: What becomes of a test whose budget is undecided or unmeasured.
+        at: The size of a ceiling; goes with `cost`.
+        cost: The ceiling: what the cost foreseen at the size `at` may not pass.
+        scout: Try each new size in a child process first (POSIX).
+        audit: The recursive function whose calls are held against the recurrence.
+        size_of: What gives the size of an audited call from its arguments (the first that has one).
+    """
 
 
 _SIGNATURE = inspect.signature(growth_budget)

@@ -54,7 +54,12 @@ class PlacedBudget:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Ratchet:
-    """No test may grow faster than its record in the file `accepted`, by more than `margin` (None: by the meter)."""
+    """No test may grow faster than its accepted record.
+
+    Attributes:
+        accepted: The file of accepted records, from the project's root.
+        margin: The smallest rise of an exponent that fails (0.10 for clocks, 0.03 for counts).
+    """
 
     accepted: str
     margin: float | None = None
@@ -62,8 +67,19 @@ class Ratchet:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Settings:
-    """What holds for the whole run. `time_limit` is in seconds a test, `session_time_limit` in seconds of measuring
-    by this process; `slack` is by meter.
+    """What holds for the whole run.
+
+    Attributes:
+        confidence: The confidence of the intervals.
+        time_limit: Seconds that each budget of a test may take.
+        session_time_limit: Seconds of measuring in the whole run, under xdist in each worker (no limit).
+        undecided: What becomes of a test whose budget is undecided or unmeasured.
+        seed: The seed of sizes and workloads.
+        ordinary_size: `problem_size` in a test without a budget.
+        scout: Try each new size in a child process first (POSIX).
+        slack: The excess that is tolerated, by meter or kind of meter (`tally`).
+        budgets: Budgets put on tests by node id.
+        ratchet: The accepted records that no test may outgrow.
     """
 
     enabled: bool = True

@@ -13,11 +13,22 @@ from pytest_growthbudget.bounds.language import BoundError
 
 EXPLAIN_USAGE = "usage: python -m pytest_growthbudget explain [--json] TEXT | -"
 COMPARE_USAGE = "usage: python -m pytest_growthbudget compare [--json] A B | -"
+_EXPLAIN_ABOUT = "Show the growth of the bound or recurrence TEXT, and how it was derived."
+_COMPARE_ABOUT = "Say which of two bounds or recurrences grows the slower, by proof."
+_OPTIONS_HELP = """Exit code: 0 fine, 2 an input is at fault.
+
+options:
+  --json  answer with a JSON object
+  -       read one input a line, and answer each with a JSON object
+"""
 _BETWEEN = (r"\t+", r"\s\|\|?\s", r"\svs\.?\s", r"\s{2,}", r"\s*;\s*", r"\s*,\s*")
 
 
 def explain(arguments: Sequence[str], out: TextIO, error: TextIO) -> int:
     """Explains one bound or recurrence, or one a line with `-`. Returns 0, or 2 if an input is at fault."""
+    if _asks_for_help(arguments):
+        out.write(f"{EXPLAIN_USAGE}\n\n{_EXPLAIN_ABOUT}\n{_OPTIONS_HELP}")
+        return 0
     as_json, texts = _options(arguments)
     if len(texts) != 1:
         error.write(EXPLAIN_USAGE + "\n")
@@ -41,6 +52,9 @@ def explain(arguments: Sequence[str], out: TextIO, error: TextIO) -> int:
 
 def compare_command(arguments: Sequence[str], out: TextIO, error: TextIO) -> int:
     """Compares two growths, or two a line with `-`. Returns 0, or 2 if an input is at fault."""
+    if _asks_for_help(arguments):
+        out.write(f"{COMPARE_USAGE}\n\n{_COMPARE_ABOUT}\n{_OPTIONS_HELP}")
+        return 0
     as_json, texts = _options(arguments)
     if texts == ["-"]:
         return _each_line(_compared_line, out)
@@ -60,6 +74,10 @@ def compare_command(arguments: Sequence[str], out: TextIO, error: TextIO) -> int
     words = {"slower": "grows slower than", "same": "grows like", "faster": "grows faster than"}
     out.write(f"{left.theta} {words[relation]} {right.theta}\n")
     return 0
+
+
+def _asks_for_help(arguments: Sequence[str]) -> bool:
+    return any(argument in ("-h", "--help") for argument in arguments)
 
 
 def _options(arguments: Sequence[str]) -> tuple[bool, list[str]]:

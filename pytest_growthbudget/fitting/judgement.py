@@ -40,10 +40,18 @@ class ForecastRow:
 class Finding:
     """What a decision rule returns: the verdict over the sizes measured, and why.
 
-    `excess`: δ in cost ~ growth(n) · n^δ. `exponent`: the measured cost's own exponent over the same sizes.
-    `bends_at`: first size from which the cost runs ahead of the budget (exceeded only). `confirmed`: whether a
-    second, independent set of readings agreed (None: none was needed). `stage`: "A", "B" or "C".
-    `resolution`: the smallest excess that this run could have told from zero.
+    Attributes:
+        verdict: "within", "exceeded", "undecided" or "unmeasured".
+        reason: Why, in a sentence.
+        excess: δ in cost ~ growth(n) · n^δ: `estimate`, `low` and `high`.
+        exponent: The measured cost's own exponent over the same sizes: `estimate`, `low` and `high`.
+        resolution: The smallest excess that this run could have told from zero.
+        nearest: The simple growth nearest to what was observed.
+        sizes: What was read, a row a size: `size`, `cost`, `readings` and `footprint`.
+        forecast: The cost at sizes that were not run, a row a size: `size`, `cost` and `allowed`.
+        bends_at: The first size from which the cost runs ahead of the budget (exceeded only).
+        confirmed: Whether a second, independent set of readings agreed; None where none was needed.
+        stage: How far the readings went: "A" (small and cache-resident), "B" or "C".
     """
 
     verdict: VerdictName
@@ -80,13 +88,25 @@ class GrownLine:
 class Judgement(Finding):
     """A finding with the budget it was held to.
 
-    `bound`: the promise as written; `theta`: its growth; `steps`: the derivation. `slack`, `confidence`: what the
-    decision used. `seconds`: wall time of the whole measurement. `notes`: what distorted the readings, one
-    sentence each. `allowed`: for each row of `sizes`, what the budget allows there, scaled to where the cost was
-    lowest against it.
-    `variable`: the name of the size that grew. `ceiling`: the forecast that was held to a ceiling, and the ceiling.
-    `yardstick`: for each row of `sizes`, what the reference function cost. `ray`: which sizes grew, where the bound
-    has several variables (the worst ray is the one reported); `rays`: the verdict on each ray that was judged.
+    Attributes:
+        bound: The promise as written.
+        theta: Its growth.
+        meter: The meter that was read.
+        unit: The meter's unit.
+        slack: The slack that the decision used.
+        confidence: The confidence of the intervals.
+        theorem: The theorem that solved the recurrence, "" for a bound.
+        steps: The derivation.
+        seconds: Wall time of the whole measurement.
+        seed: The seed with which sizes and workloads are the same again.
+        notes: What distorted the readings, one sentence each.
+        allowed: For each row of `sizes`, what the budget allows there, scaled to where the cost was lowest against it.
+        variable: The name of the size that grew.
+        ceiling: The forecast that was held to a ceiling, and the ceiling.
+        yardstick: For each row of `sizes`, what the reference function cost.
+        ray: Which sizes grew, where the bound has several variables: the worst ray is the one reported.
+        rays: The verdict on each ray that was judged.
+        lines: The lines to look at, the fastest growth first.
     """
 
     bound: str

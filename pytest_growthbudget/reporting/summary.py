@@ -27,7 +27,8 @@ def write_summary(terminal: Any, judged: list[dict[str, Any]]) -> None:
     terminal.section("growth budgets", sep="-")
     for judgement in judged:
         doubts = [note for note in judgement["notes"] if note.startswith(FLAT)]
-        if verbosity > 0 or doubts or judgement["verdict"] in ("undecided", "unmeasured"):
+        is_open = judgement["verdict"] in ("undecided", "unmeasured") and judgement["undecided"] != "pass"
+        if verbosity > 0 or doubts or is_open:
             terminal.write_line(f"{judgement['test']}")
             terminal.write_line(_indented(first_line(judgement)))
         for note in doubts:

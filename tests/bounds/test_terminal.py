@@ -125,6 +125,14 @@ def test_help_names_the_commands(capsys: pytest.CaptureFixture[str]) -> None:
     assert all(name in out for name in __main__.COMMANDS)
 
 
+@pytest.mark.parametrize("arguments", [["explain", "--help"], ["compare", "-h"]])
+def test_a_command_tells_how_it_is_used(arguments: list[str], monkeypatch: pytest.MonkeyPatch) -> None:
+    """Help is asked for, not a bound: it goes to standard output, and nothing is at fault."""
+    code, out, error = _run(arguments, monkeypatch)
+    assert (code, error) == (0, "")
+    assert out.startswith(f"usage: python -m pytest_growthbudget {arguments[0]} [--json] ")
+
+
 def test_explain_imports_neither_numpy_nor_scipy_nor_pytest() -> None:
     """A fresh interpreter that explained a recurrence has none of them loaded."""
     code = (

@@ -1,7 +1,8 @@
-"""Fills the outputs in the README in: `python -m tests.docs.refresh`.
+"""Fills the outputs in the README and the guide in: `python -m tests.docs.refresh [FILE.md ...]`.
 
 A comment `<!-- report: FILE -->` stands before the report of that faulty twin of the sample project,
-`<!-- command: ARGUMENTS -->` before what `python ARGUMENTS` prints.
+`<!-- command: ARGUMENTS -->` before what `python ARGUMENTS` prints, and between `<!-- names: TABLE -->` and
+`<!-- end -->` stands a table of `names.py`. The block after `<!-- script -->` is run, its output is the next block.
 """
 
 from __future__ import annotations
@@ -13,13 +14,17 @@ import sys
 from collections.abc import Callable
 from pathlib import Path
 
+from tests.docs.names import TABLES
+
 ROOT = Path(__file__).parents[2]
 BLOCK = re.compile(r"(<!-- (report|command): (.*?) -->\n```\n)(.*?)(```\n)", re.S)
+NAMES = re.compile(r"(<!-- names: (\w+) -->\n).*?(<!-- end -->)", re.S)
+SCRIPT = re.compile(r"(<!-- script -->\n```python\n(.*?)```\n\n```\n).*?(```\n)", re.S)
 
 
-def python(*arguments: str) -> str:
+def python(*arguments: str, folder: Path = ROOT) -> str:
     done = subprocess.run(
-        [sys.executable, *arguments], cwd=ROOT, capture_output=True, text=True, check=False, env={"COLUMNS": "80"}
+        [sys.executable, *arguments], cwd=folder, capture_output=True, text=True, check=False, env={"COLUMNS": "80"}
     )
     return done.stdout
 
@@ -40,11 +45,14 @@ FILLED_BY: dict[str, Callable[[str], str]] = {"report": report, "command": comma
 
 
 def refreshed(text: str) -> str:
+    text = NAMES.sub(lambda place: f"{place[1]}\n{TABLES[place[2]]()}\n\n{place[3]}", text)
+    text = SCRIPT.sub(lambda block: block[1] + python("-c", block[2], folder=ROOT / "sample_project") + block[3], text)
     return BLOCK.sub(lambda block: block[1] + FILLED_BY[block[2]](block[3]).rstrip() + "\n" + block[5], text)
 
 
 def main() -> None:
-    for path in [ROOT / "README.md", *sorted((ROOT / "pytest_growthbudget" / "guide").glob("*.md"))]:
+    chosen = [Path(name).resolve() for name in sys.argv[1:]]
+    for path in chosen or [ROOT / "README.md", *sorted((ROOT / "pytest_growthbudget" / "guide").glob("*.md"))]:
         before = path.read_text()
         after = refreshed(before)
         if after != before:

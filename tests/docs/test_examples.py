@@ -1,47 +1,91 @@
-"""Every example file in the docs runs, with the outcome that is noted beside it."""
+"""Every example in the docs runs, with the outcome that is noted beside it.
+
+`<!-- file: NAME; outcome: passed=1 -->` stands before a test file, `<!-- file: NAME -->` before a file that stands
+beside the next one, `<!-- script -->` before code that is run by itself and prints the block after it. Any other block
+of Python is markers, which are read.
+"""
 
 from __future__ import annotations
 
 import re
+import subprocess
+import sys
 from pathlib import Path
 
 import pytest
 
-from pytest_growthbudget.bounds.budget import parse_budget
+from pytest_growthbudget.plans import plan_of
+from pytest_growthbudget.settings import Settings
 
 ROOT = Path(__file__).parents[2]
+SAMPLE = ROOT / "sample_project"
 PAGES = [ROOT / "README.md", *sorted((ROOT / "pytest_growthbudget" / "guide").glob("*.md"))]
-EXAMPLE = re.compile(r"<!-- file: (?P<name>\S+); outcome: (?P<outcome>[^>]*?) -->\n```python\n(?P<code>.*?)```", re.S)
-MARKER = re.compile(r"growth_budget\(\"([^\"]+)\"")
-LINK = re.compile(r"\]\(([^)#:]+)(?:#[^)]*)?\)")
+BLOCK = re.compile(
+    r"(?:<!-- (?P<what>file|script)(?:: (?P<name>\S+?)(?:; outcome: (?P<outcome>.*?))?)? -->\n)?"
+    r"```python\n(?P<code>.*?)```\n(?:\n```\n(?P<printed>.*?)```\n)?",
+    re.S,
+)
+LINK = re.compile(r"\]\(([^)#:]*)(?:#([^)]*))?\)")
 
 
-def examples() -> list[tuple[str, str, dict[str, int], str]]:
-    return [
-        (
-            f"{path.name}-{found['name']}",
-            found["name"],
-            {key: int(value) for key, value in re.findall(r"(\w+)=(\d+)", found["outcome"])},
-            found["code"],
-        )
-        for path in PAGES
-        for found in EXAMPLE.finditer(path.read_text())
-    ]
+def blocks(what: str | None) -> list[tuple[Path, re.Match[str]]]:
+    return [(path, found) for path in PAGES for found in BLOCK.finditer(path.read_text()) if found["what"] == what]
 
 
-@pytest.mark.parametrize(("label", "name", "outcome", "code"), examples(), ids=lambda value: str(value)[:40])
-def test_an_example_runs(pytester: pytest.Pytester, label: str, name: str, outcome: dict[str, int], code: str) -> None:
-    (pytester.path / name).write_text(code)
+def examples() -> list[object]:
+    """Each test file with the files beside it, by name, and its outcome."""
+    found, files = [], {}
+    for path, block in blocks("file"):
+        files[block["name"]] = block["code"]
+        if block["outcome"]:
+            outcome = {key: int(value) for key, value in re.findall(r"(\w+)=(\d+)", block["outcome"])}
+            found.append(pytest.param(files, outcome, id=f"{path.stem}-{block['name']}"))
+            files = {}
+    return found
+
+
+@pytest.mark.parametrize(("files", "outcome"), examples())
+def test_an_example_runs(pytester: pytest.Pytester, files: dict[str, str], outcome: dict[str, int]) -> None:
+    pytester.syspathinsert(SAMPLE)
+    for name, code in files.items():
+        (pytester.path / name).write_text(code)
     pytester.runpytest("-W", "default").assert_outcomes(**outcome)
 
 
-@pytest.mark.parametrize("path", PAGES, ids=lambda path: path.name)
-def test_every_bound_in_the_docs_is_understood(path: Path) -> None:
-    for bound in MARKER.findall(path.read_text()):
-        parse_budget(bound)
+def test_a_script_prints_what_the_docs_show() -> None:
+    for path, block in blocks("script"):
+        run = [sys.executable, "-c", block["code"]]
+        done = subprocess.run(run, cwd=SAMPLE, capture_output=True, text=True, check=False)
+        # Further lines have figures that differ between versions of Python.
+        assert done.stdout.splitlines()[:1] == block["printed"].splitlines()[:1], (path.name, done.stderr)
+
+
+def test_any_other_block_of_python_is_markers_that_are_accepted(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.syspath_prepend(SAMPLE)
+    from harbour.arrivals import merge_manifests
+
+    for _, block in blocks(None):
+        known = {"pytest": pytest, "merge_manifests": merge_manifests}
+        exec(f"{block['code']}def test(): pass", known)
+        for mark in known["test"].pytestmark:
+            plan_of(mark.args, mark.kwargs, Settings(), "the docs")
 
 
 @pytest.mark.parametrize("path", [*PAGES, ROOT / "DEVELOPERS.md"], ids=lambda path: path.name)
 def test_every_link_between_the_docs_leads_somewhere(path: Path) -> None:
-    for target in LINK.findall(path.read_text()):
-        assert (path.parent / target).exists(), target
+    for target, place in LINK.findall(path.read_text()):
+        page = path.parent / target if target else path
+        assert page.exists(), target
+        assert not place or place in anchors(page), f"{target}#{place}"
+
+
+def anchors(page: Path) -> set[str]:
+    """What the headings of a page are linked by."""
+    headings = re.findall(r"^#+ (.*)$", page.read_text(), re.M)
+    return {re.sub(r"[^\w\- ]", "", heading.lower()).replace(" ", "-") for heading in headings}
+
+
+def test_the_readme_is_short_and_leads_to_every_page() -> None:
+    text = (ROOT / "README.md").read_text()
+    assert len(text.splitlines()) <= 220
+    assert [path.name for path in PAGES if f"guide/{path.name})" not in text and path.name != "README.md"] == []

@@ -35,7 +35,7 @@ def judgement(test: str, seconds: float, verdict: str = "within", **changed: Any
         "test": test, "seconds": seconds, "verdict": verdict, "meter": "cpu_time", "theta": "n log n", "ray": "",
         "reason": "its interval of 0.3 to 0.9 lies on both sides of the slack; a longer time_limit would settle it",
         "exponent": {"estimate": 1.1, "low": 1.0, "high": 1.2}, "excess": None, "variable": "n", "nearest": None,
-        "ceiling": None, "notes": [], **changed,
+        "ceiling": None, "notes": [], "undecided": "warn", **changed,
     }  # fmt: skip
 
 
@@ -60,6 +60,12 @@ def test_quiet_is_one_line() -> None:
 
 def test_what_would_settle_an_open_verdict_is_said() -> None:
     assert written(0, SOUND, OPEN) == ["- growth budgets", *UNDECIDED, TOTAL]
+
+
+def test_an_open_verdict_that_may_pass_is_counted_and_no_more() -> None:
+    may_pass = judgement("test_a.py::test_b", 2.0, "undecided", undecided="pass")
+    assert written(0, SOUND, may_pass) == ["- growth budgets", TOTAL]
+    assert written(1, SOUND, may_pass)[3:6] == UNDECIDED
 
 
 def test_verbose_lists_each_and_its_time() -> None:
