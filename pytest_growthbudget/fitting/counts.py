@@ -5,9 +5,11 @@ from __future__ import annotations
 from collections.abc import Generator
 from typing import Final
 
+import numpy as np
+
 from pytest_growthbudget.fitting import reasons
 from pytest_growthbudget.fitting.evidence import Evidence
-from pytest_growthbudget.fitting.excess import COUNTER_NOISE, FEWEST_SIZES
+from pytest_growthbudget.fitting.excess import COUNTER_NOISE, FEWEST_SIZES, Observations
 from pytest_growthbudget.fitting.finding import conclude, shown_excess
 from pytest_growthbudget.fitting.judgement import Finding
 from pytest_growthbudget.fitting.run import Run
@@ -53,4 +55,18 @@ def decide_counts(promise: Promise) -> Generator[Request, Answer, Finding]:
 
 
 def _exceeds(evidence: Evidence, limits: Limits) -> bool:
+    if not _runs_ahead(evidence.seen, limits.exceeded):
+        return False
     return is_exceeded(evidence.plain, evidence.plain, evidence.gamma, limits.exceeded, limits)
+
+
+def _runs_ahead(seen: Observations, limit: float) -> bool:
+    """Whether the counts, having been lowest against the budget, have risen by half the limit since.
+
+    A cost that falls towards its budget and then keeps to it (an array that needs buffers while it is small) bends as
+    a constant beside a steeper power would, and the model takes it for that.
+    """
+    ahead = np.log(seen.costs) - seen.log_growth
+    lowest = int(ahead.argmin())
+    span = seen.regressor[-1] - seen.regressor[lowest]
+    return bool(ahead[-1] - ahead[lowest] > limit / 2 * span)

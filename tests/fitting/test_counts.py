@@ -96,6 +96,19 @@ def test_exact_counts(cost, budget: str, verdict: str) -> None:  # type: ignore[
     assert found.confirmed is (True if verdict == "exceeded" else None)
 
 
+def test_counts_that_fall_towards_their_budget_and_keep_to_it_are_not_exceeded() -> None:
+    """KiB at the peak of numpy's distances between n points: small arrays take twice as much for each pair."""
+    peak = {50: 119, 60: 170, 71: 207, 84: 238, 100: 283, 119: 349, 141: 468, 168: 663, 200: 939, 238: 1331}
+    peak |= {283: 1874, 336: 2652, 400: 3748, 447: 4680, 500: 5857}
+    found, _ = decided(peak, lambda repeat: [list(peak.values())], GROWTHS["n2"])
+    assert found.verdict != "exceeded"
+
+
+def test_counts_that_fall_towards_their_budget_and_then_run_ahead_are_exceeded() -> None:
+    found, _ = decided(SIZES, counts_of(lambda n: 3000 + n * math.log2(n)), GROWTHS["n"])
+    assert found.verdict == "exceeded"
+
+
 def test_counts_that_are_zero_at_some_sizes_are_still_judged() -> None:
     found, _ = decided(SIZES, lambda repeat: [[max(0, n - 300) for n in SIZES]], GROWTHS["1"])
     assert found.verdict == "exceeded"
