@@ -15,6 +15,7 @@ from pytest_growthbudget.__main__ import COMMANDS
 from pytest_growthbudget.fitting.judgement import VerdictName
 from pytest_growthbudget.meters.registry import _BUILT_IN
 from pytest_growthbudget.reporting.properties import properties_of
+from pytest_growthbudget.settings import DEFAULT_SLACK
 from pytest_growthbudget.workloads import shapes
 from tests.docs.refresh import refreshed
 
@@ -58,6 +59,12 @@ def test_every_command_and_extra_is_in_the_reference() -> None:
     assert [name for name in COMMANDS if f"-m pytest_growthbudget {name} --help" not in text] == []
     extras = metadata.metadata("pytest_growthbudget").get_all("Provides-Extra") or []
     assert [name for name in extras if f"[{name}]" not in text and f"`{name}`" not in text] == []
+
+
+@pytest.mark.parametrize(("meter", "slack"), DEFAULT_SLACK.items())
+def test_the_guide_to_meters_has_every_meter_with_its_slack(meter: str, slack: float) -> None:
+    rows = re.findall(rf"^\| `{meter}(?::NAME)?` .* \| (\S+) \|$", (GUIDE / "meters.md").read_text("utf-8"), re.M)
+    assert rows == [str(slack)]
 
 
 def test_every_shape_is_in_the_guide() -> None:

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import json
 import math
+from dataclasses import fields
 from typing import Any
 
 import numpy as np
 import pytest
 
 from pytest_growthbudget.fitting.judgement import ForecastRow, Interval, Judgement, SizeRow
+from pytest_growthbudget.reporting.schema import schema
 from pytest_growthbudget.reporting.wire import from_wire, plain, to_wire
 
 
@@ -73,3 +75,8 @@ def test_numbers_that_are_not_finite_become_none() -> None:
 def test_what_cannot_leave_is_refused() -> None:
     with pytest.raises(TypeError, match="object cannot leave the process"):
         plain({"a": object()})
+
+
+def test_all_that_a_judgement_holds_is_in_the_schema_of_records() -> None:
+    known = schema()["properties"]["judgement"]["properties"]
+    assert [item.name for item in fields(Judgement) if item.name not in known] == []
