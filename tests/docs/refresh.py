@@ -17,8 +17,9 @@ from pathlib import Path
 from tests.docs.names import TABLES
 
 ROOT = Path(__file__).parents[2]
-BLOCK = re.compile(r"(<!-- (report|command): (.*?) -->\n```\n)(.*?)(```\n)", re.S)
 NAMES = re.compile(r"(<!-- names: (\w+) -->\n).*?(<!-- end -->)", re.S)
+COMMAND = re.compile(r"(<!-- command: (.*?) -->\n```\n).*?(```\n)", re.S)
+REPORT = re.compile(r"(<!-- report: (.*?) -->\n```\n).*?(```\n)", re.S)
 SCRIPT = re.compile(r"(<!-- script -->\n```python\n(.*?)```\n\n```\n).*?(```\n)", re.S)
 
 
@@ -37,17 +38,20 @@ def report(name: str) -> str:
     return found.group(1)
 
 
-def command(arguments: str) -> str:
-    return python(*shlex.split(arguments))
-
-
-FILLED_BY: dict[str, Callable[[str], str]] = {"report": report, "command": command}
+def settled(text: str) -> str:
+    """The text with all that is the same on every machine: tables of names, and what commands print."""
+    text = NAMES.sub(lambda place: f"{place[1]}\n{TABLES[place[2]]()}\n\n{place[3]}", text)
+    return filled(text, COMMAND, lambda arguments: python(*shlex.split(arguments)))
 
 
 def refreshed(text: str) -> str:
-    text = NAMES.sub(lambda place: f"{place[1]}\n{TABLES[place[2]]()}\n\n{place[3]}", text)
-    text = SCRIPT.sub(lambda block: block[1] + python("-c", block[2], folder=ROOT / "sample_project") + block[3], text)
-    return BLOCK.sub(lambda block: block[1] + FILLED_BY[block[2]](block[3]).rstrip() + "\n" + block[5], text)
+    """The text with that, and with what was measured anew."""
+    text = filled(settled(text), REPORT, report)
+    return filled(text, SCRIPT, lambda code: python("-c", code, folder=ROOT / "sample_project"))
+
+
+def filled(text: str, block: re.Pattern[str], by: Callable[[str], str]) -> str:
+    return block.sub(lambda found: found[1] + by(found[2]).rstrip() + "\n" + found[3], text)
 
 
 def main() -> None:

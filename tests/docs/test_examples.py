@@ -16,6 +16,7 @@ import pytest
 
 from pytest_growthbudget.plans import plan_of
 from pytest_growthbudget.settings import Settings
+from tests.docs.refresh import settled
 
 ROOT = Path(__file__).parents[2]
 SAMPLE = ROOT / "sample_project"
@@ -50,6 +51,12 @@ def test_an_example_runs(pytester: pytest.Pytester, files: dict[str, str], outco
     for name, code in files.items():
         (pytester.path / name).write_text(code)
     pytester.runpytest("-W", "default").assert_outcomes(**outcome)
+
+
+@pytest.mark.parametrize("path", PAGES, ids=lambda path: path.name)
+def test_names_and_what_commands_print_are_up_to_date(path: Path) -> None:
+    text = path.read_text()
+    assert settled(text) == text, "python -m tests.docs.refresh brings it up to date"
 
 
 def test_a_script_prints_what_the_docs_show() -> None:
