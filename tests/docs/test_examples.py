@@ -86,6 +86,18 @@ def test_every_link_between_the_docs_leads_somewhere(path: Path) -> None:
         assert not place or place in anchors(page), f"{target}#{place}"
 
 
+def test_every_file_that_developers_are_sent_to_is_there() -> None:
+    named = re.findall(r"`([\w/.]+/[\w.]*)`", (ROOT / "DEVELOPERS.md").read_text())
+    assert len(named) > 20
+    assert [name for name in named if "NAME" not in name and not is_there(name)] == []
+
+
+def is_there(name: str) -> bool:
+    """Whether it is a folder, a file or a module, from the root or in the package."""
+    folders = (ROOT, ROOT / "pytest_growthbudget")
+    return any((folder / name).exists() or (folder / f"{name}.py").exists() for folder in folders)
+
+
 def anchors(page: Path) -> set[str]:
     """What the headings of a page are linked by."""
     headings = re.findall(r"^#+ (.*)$", page.read_text(), re.M)
