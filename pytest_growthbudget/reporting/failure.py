@@ -21,7 +21,7 @@ def fails(judgement: dict[str, Any]) -> bool:
 
 def power(exponent: float, variable: str = "n") -> str:
     """A measured exponent as a growth: `n^1.97`."""
-    return f"{variable}^{exponent:.2f}"
+    return f"{variable}^{round(exponent, 2) + 0.0:.2f}"  # no -0.00
 
 
 def first_line(judgement: dict[str, Any]) -> str:

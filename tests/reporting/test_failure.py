@@ -79,6 +79,10 @@ def test_the_whole_report() -> None:
         ({}, "growth budget exceeded: cpu_time grows as n^1.97 where n log n is allowed"),
         ({"verdict": "within"}, "growth budget kept: cpu_time grows as n^1.97 where n log n is allowed"),
         (
+            {"verdict": "within", "theta": "1", "exponent": Interval(estimate=-0.001, low=-0.01, high=0.01)},
+            "growth budget kept: cpu_time grows as n^0.00 where 1 is allowed",
+        ),
+        (
             {"variable": "V", "ray": "V alone, E = 100", "theta": "V + E"},
             "growth budget exceeded: cpu_time grows as V^1.97 where V + E is allowed (V alone, E = 100)",
         ),
