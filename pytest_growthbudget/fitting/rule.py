@@ -110,8 +110,17 @@ class _Clock:
         if is_suspicious(evidence.plain, evidence.gamma, limits.suspect, limits):
             self.doubt = reasons.SUSPICIOUS
             return None
-        if (yield from self.looks_ahead_well()):
-            return self.within()
+        ahead = yield from self.looks_ahead()
+        if ahead <= limits.look_ahead:
+            kept = self.within()
+            if ahead <= limits.look_on:
+                return kept
+            # Tolerated, though a steeper term may be coming up behind: dearer sizes would tell, and only they accuse.
+            for stage in (self.stage_b, self.stage_c):
+                found = yield from stage()
+                if found is not None and found.verdict == "exceeded":
+                    return found
+            return kept
         self.ahead = True
         return None
 
@@ -210,22 +219,20 @@ class _Clock:
         assert resident.deflated is not None
         return resident.deflated.delta.quantiles((limits.lower,))[0] > limits.resident
 
-    def looks_ahead_well(self) -> Generator[Request, Answer, bool]:
-        """Whether two calls at one much larger size are explained by tolerated growth and by memory."""
+    def looks_ahead(self) -> Generator[Request, Answer, float]:
+        """The excess, between the last few sizes and one much larger, that memory does not explain; 0 without one."""
         evidence, run = self.judged(), self.run
         peeked = yield from run.peek(Peek(self.last, AHEAD_COST, AHEAD_FOOTPRINT, AHEAD_BEYOND))
         if peeked is None:
-            return True
+            return 0.0
         joined = run.joined(evidence, peeked)
         before = slice(max(0, len(evidence) - AHEAD_SIZES), len(evidence))
         height = np.log(joined.seen.costs) - joined.seen.log_growth
         rise = float(height[-1] - height[before].mean())
         distance = float(joined.seen.regressor[-1] - joined.seen.regressor[before].mean())
-        tolerated = run.limits.look_ahead * distance
-        if rise <= tolerated:
-            return True
-        allowed = joined.allowed
-        return allowed is not None and rise - float(allowed[-1] - allowed[before].mean()) <= tolerated
+        if rise > run.limits.look_on * distance and joined.allowed is not None:
+            rise -= float(joined.allowed[-1] - joined.allowed[before].mean())
+        return rise / distance
 
     # ------------------------------------------------------------ endings
 

@@ -42,8 +42,9 @@ class Limits:
     `exceeded_flat`: the least such bound for a flat budget.
     `within`, `within_hidden`: the upper bounds below which it is kept. `suspect`, `suspect_later`, `suspect_last`:
     the lower bounds above which a fit that would be within is not believed at stage A, at stage B, and when there
-    is no stage to come. `look_ahead`: the excess tolerated at one larger size. `resident`: the lower bound on
-    cache-resident sizes above which a deflated fit is not believed.
+    is no stage to come. `look_ahead`: the excess tolerated at one larger size, and `look_on` the one above which
+    dearer sizes are read all the same. `resident`: the lower bound on cache-resident sizes above which a deflated fit
+    is not believed.
     """
 
     confidence: float
@@ -56,6 +57,7 @@ class Limits:
     suspect_later: float
     suspect_last: float
     look_ahead: float
+    look_on: float
     resident: float
 
     @property
@@ -83,6 +85,7 @@ def clock_limits(slack: float = CLOCK_SLACK, confidence: float = 0.95) -> Limits
         suspect_later=0.05 + wider,
         suspect_last=0.10 + wider,
         look_ahead=slack + 0.15,
+        look_on=slack,
         resident=0.05 + wider,
     )
 
@@ -101,6 +104,7 @@ def count_limits(slack: float, confidence: float = 0.95) -> Limits:
         suspect_later=nowhere,
         suspect_last=nowhere,
         look_ahead=nowhere,
+        look_on=nowhere,
         resident=nowhere,
     )
 

@@ -128,6 +128,34 @@ def test_a_jump_ahead_of_the_sizes_read_is_looked_into() -> None:
     assert found.verdict != "within"
 
 
+@pytest.mark.parametrize("share", [0.12, 0.2])
+def test_a_square_that_comes_up_behind_linear_work_is_followed(share: float) -> None:
+    """At the top of stage A it is the smaller part by far; the look ahead tolerates it, and dearer sizes accuse."""
+
+    def cost(n: float) -> float:
+        return 1000.0 * (n + share * n * n / 5000)
+
+    case = Formula(cost, bytes_each=1.0)
+    found = case.decide(BUDGETS["n"])
+    assert case.of(Peek)
+    assert found.verdict == "exceeded"
+    assert found.stage in ("B", "C")
+    assert found.confirmed
+
+
+def test_a_step_up_ahead_that_comes_to_nothing_does_not_cost_the_verdict() -> None:
+    """A jump such as memory makes is looked into where it is tolerated, and what was read before still counts."""
+
+    def cost(n: float) -> float:
+        return 1000.0 * n * (1.0 if n < 2e4 else 1.55)
+
+    case = Formula(cost, bytes_each=1.0)
+    found = case.decide(BUDGETS["n"])
+    assert max(size for request in case.asked if isinstance(request, Rounds) for size in [request.last]) > 14
+    assert found.verdict == "within"
+    assert found.stage == "A"
+
+
 def test_a_larger_slack_tolerates_more() -> None:
     def cost(n: float) -> float:
         return 50.0 * n**1.4
