@@ -360,41 +360,44 @@ class Campaign:
     # ------------------------------------------------------------ look-ahead
 
     def _peek(self, request: Peek) -> Peeked | None:
-        """Two calls at one much larger size, reached by steps that each risk no more than `RISK` in cost."""
+        """Two calls at one much larger size, reached by steps that each risk no more than `RISK_OF_PEEK` in cost.
+
+        Where time does not allow for that size, one as large as it allows.
+        """
         if self._ended in ("time", "runaway"):
             return None
-        top = self._rungs[request.last - 1]
+        least = request.beyond * self._rungs[request.last - 1].size
         points = [(rung.size, rung.cost) for rung in self._rungs]
         size = self._peek_size(request, points)
-        if size is None or size < request.beyond * top.size:
-            return None
-        at = points[-1][0]
-        elapsed = max(self._rungs[-1].elapsed, 1.0)
-        best: Reading | None = None
-        while best is None:
-            step = size
+        at, elapsed = points[-1][0], max(self._rungs[-1].elapsed, 1.0)
+        growth_of_all = max(self._trend(lambda rung: rung.elapsed), 1.0)
+        seen: Reading | None = None
+        while True:
             growth = max(math.log(points[-1][1] / points[-2][1]) / math.log(at / points[-2][0]), 0.5)
-            step = min(step, int(at * RISK_OF_PEEK ** (1 / growth)))
-            step = max(step, at + 1)
-            growth_of_all = max(self._trend(lambda rung: rung.elapsed), 1.0)
-            if 3 * elapsed * min((step / at) ** growth_of_all, RISK_OF_PEEK) > self.left:
-                return None
+            size = min(size, int(at * max(self.left / (3 * elapsed), 0.0) ** (1 / growth_of_all)))
+            if size <= at or size < least:
+                break
+            step = min(size, max(int(at * RISK_OF_PEEK ** (1 / growth)), at + 1))
             self._may_take(self.left / 2)
             try:
-                first = self.take(step, 1)
-                if step >= size or first.cost > request.cost / 2:
-                    second = self.take(step, 1) if 2 * first.elapsed < self.left else first
-                    best = min(first, second, key=lambda reading: reading.cost)
+                seen = self.take(step, 1)
+                if step >= size or seen.cost > request.cost / 2:
+                    second = self.take(step, 1) if 2 * seen.elapsed < self.left else seen
+                    seen = min(seen, second, key=lambda reading: reading.cost)
+                    break
             except (Overrun, Exhausted) as cause:
                 self._cut_off(step, cause)
                 return None
-            points.append((step, first.cost))
-            at, elapsed = step, first.elapsed
-        return Peeked(reading=best, footprint=self._bytes_at(best.size))
-
-    def _peek_size(self, request: Peek, points: Sequence[tuple[int, float]]) -> int | None:
-        if len(points) < 3:
+            points.append((step, seen.cost))
+            at, elapsed = step, max(seen.elapsed, 1.0)
+        if seen is None or seen.size < least:
             return None
+        return Peeked(reading=seen, footprint=self._bytes_at(seen.size))
+
+    def _peek_size(self, request: Peek, points: Sequence[tuple[int, float]]) -> int:
+        """The largest size that is foreseen to keep to what is asked for; 0 where nothing can be foreseen."""
+        if len(points) < 3:
+            return 0
         top_size, top_cost = points[-1]
         growth = max(self._trend(lambda rung: rung.cost), 0.3)
         size = top_size * (request.cost / max(top_cost, 1.0)) ** (1 / growth)
@@ -403,4 +406,4 @@ class Campaign:
         limit = min(request.footprint, self.limits.memory)
         while size > top_size and self._bytes_at(int(size)) > limit:
             size /= 1.1
-        return int(size) if size > top_size else None
+        return int(size)

@@ -222,9 +222,9 @@ def test_an_overrun_in_the_rounds_keeps_what_was_read() -> None:
     assert all(costs for costs in series.costs)
 
 
-def peek(bench: Bench, **limits: Any) -> Peeked | None:
+def peek(bench: Bench, climbed: Climb | None = None, **limits: Any) -> Peeked | None:
     def rule() -> Generator[Any, Any, Peeked | None]:
-        ladder = yield Climb(5 * MS)
+        ladder = yield climbed or Climb(5 * MS)
         top = Peek(last=len(ladder.sizes), cost=60 * MS, footprint=float(1 << 25), beyond=1.9)
         peeked: Peeked | None = yield top
         return peeked
@@ -250,6 +250,21 @@ def test_the_look_ahead_sees_a_cost_that_soars_and_stops_there() -> None:
     assert peeked is not None
     assert peeked.reading.cost > 5 * MS
     assert bench.time < 5e9
+
+
+def test_the_look_ahead_goes_as_far_as_the_time_for_the_workload_allows() -> None:
+    """A cheap body whose workload is dear to build: the size that would cost enough is out of reach."""
+
+    def far(time: float) -> tuple[int, float]:
+        bench = Bench(lambda n: 1e4 + n, build=lambda n: 2e3 * n, held=lambda n: 8.0 * n)
+        peeked = peek(bench, Climb(5 * MS, float(1 << 20), at_least=9), time=time)
+        assert peeked is not None
+        return peeked.reading.size, bench.time
+
+    (near, spent), (further, more) = far(20e9), far(60e9)
+    assert 1.9 * 145_000 < near < further
+    assert spent < 20e9
+    assert more < 60e9
 
 
 def test_no_look_ahead_past_the_largest_size() -> None:
