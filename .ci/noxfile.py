@@ -27,6 +27,7 @@ OLDEST = [
     "hypothesis==6.100.0",
     "jinja2==3.1.0",
     "matplotlib==3.8.0",
+    "pyparsing==3.1.0",  # later ones warn of what matplotlib 3.8 uses
 ]
 NEWEST = ["pytest", "pluggy", "numpy", "scipy", "matplotlib", "jinja2", "hypothesis", "pytest-xdist"]
 
