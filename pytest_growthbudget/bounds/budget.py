@@ -78,7 +78,7 @@ class Budget:
     def ray(self, moving: Sequence[str], name: str = "n") -> Growth:
         """Like `ray_theta`, as a growth in the variable `name`."""
         weights = dict.fromkeys(moving, Fraction(1))
-        return g.dominant((g.monomial({name: g.along(m, weights)}), 1.0) for m in self.growth.monomials)
+        return Growth((g.monomial({name: g.growth_along(self.growth, weights)}),), (1.0,))
 
 
 def _plain(f: Factor) -> dict[str, float]:

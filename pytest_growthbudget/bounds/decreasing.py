@@ -6,7 +6,6 @@ from fractions import Fraction
 
 from pytest_growthbudget.bounds import roots
 from pytest_growthbudget.bounds.derivation import (
-    CLASS,
     Derivation,
     Unsolved,
     accumulate,
@@ -19,7 +18,7 @@ from pytest_growthbudget.bounds.derivation import (
 )
 from pytest_growthbudget.bounds.enclosure import compare_numbers, sign, to_float
 from pytest_growthbudget.bounds.exact import ONE, ZERO, Number, depends_on, exp_number
-from pytest_growthbudget.bounds.growth import CONSTANT, Factor, compare_factors
+from pytest_growthbudget.bounds.growth import CLASS, CONSTANT, Factor
 from pytest_growthbudget.bounds.printing import show_number
 from pytest_growthbudget.bounds.recurrence import Decrease, Recurrence, Shrink, Term
 from pytest_growthbudget.bounds.roots import ln_with_surds
@@ -45,7 +44,7 @@ def _homogeneous(rec: Recurrence, base: Factor, others: list[Term], steps: list[
         _check_negligible(rec, base, others, steps)
     if rec.toll is None:
         needs_cost(rec)
-        steps.append(f"no toll: T({v}) = Θ({show(rec, base)}) from positive base cases")
+        steps.append(f"no toll: {rec.function}({v}) = Θ({show(rec, base)}) from positive base cases")
         return base
     density = rec.toll.over(base)
     side = Factor(density.factorial, density.rate).sign()
@@ -58,7 +57,7 @@ def _homogeneous(rec: Recurrence, base: Factor, others: list[Term], steps: list[
         return base
     plain = Factor(power=density.power, log=density.log, loglog=density.loglog)
     total, why = accumulate(plain)
-    steps.append(f"T({v}) = Θ({shown} · (1 + Σ toll/({shown}))), and toll/({shown}) = {show(rec, plain)}")
+    steps.append(f"{rec.function}({v}) = Θ({shown} · (1 + Σ toll/({shown}))), and toll/({shown}) = {show(rec, plain)}")
     steps.append(f"{why}: 1 + Σ = Θ({show(rec, total)})")
     return base * total
 
@@ -77,8 +76,6 @@ def _check_negligible(rec: Recurrence, base: Factor, others: list[Term], steps: 
                 "such growth is often n^Θ(log n), outside the class",
             )
         lead = rec.toll
-        if compare_factors(Factor(lead.factorial, lead.rate), Factor(base.factorial, base.rate)) <= 0:
-            raise Unsolved("calls of n - k beside calls of n/b are solved only where one side provably dominates")
     for term in others:
         if term.growth.factorial or term.growth.rate:
             raise Unsolved(f"an exponential coefficient takes the solution outside the class {CLASS}")
@@ -110,7 +107,7 @@ def _characteristic(rec: Recurrence, down: list[Term], others: list[Term]) -> De
             "summation" if len(parts) == 1 else "linear recurrence with constant coefficients (characteristic root 1)"
         )
         if len(parts) == 1:
-            steps.append(f"T({v}) = T({v} - {parts[0][1]}) + toll unrolls to a sum of tolls")
+            steps.append(f"{rec.function}({v}) = {rec.function}({v} - {parts[0][1]}) + toll unrolls to a sum of tolls")
         else:
             steps.append("the coefficients add up to 1, so the dominant characteristic root is 1, of multiplicity 1")
     else:
@@ -124,7 +121,7 @@ def _characteristic(rec: Recurrence, down: list[Term], others: list[Term]) -> De
     growth = _homogeneous(rec, base, others, steps)
     if rec.toll is not None and rate != 0 and rec.toll.rate == rate and not rec.toll.factorial:
         steps.insert(len(steps) - 1, "resonance: the toll grows at the rate of the characteristic root")
-    steps.append(f"T({v}) = Θ({show(rec, growth)})")
+    steps.append(f"{rec.function}({v}) = Θ({show(rec, growth)})")
     return Derivation(growth, name, tuple(steps))
 
 
@@ -141,8 +138,6 @@ def _product(rec: Recurrence, down: list[Term], others: list[Term]) -> Derivatio
     """
     v = rec.variable
     first = min(down, key=lambda t: delay(t))
-    if sum(t.argument == first.argument for t in down) > 1:
-        raise Unsolved("several calls of the same argument with different coefficients: write their sum as one")
     a = known(first)
     f = first.growth
     k = delay(first)
@@ -176,12 +171,12 @@ def _product(rec: Recurrence, down: list[Term], others: list[Term]) -> Derivatio
     shown = show(rec, Factor(power=gamma)) if gamma else ""
     coefficient = " ".join(x for x in ("" if a == 1 and shown else show_number(a), shown) if x)
     steps = [
-        f"the coefficient of T({v} - {k}) is {coefficient}"
+        f"the coefficient of {rec.function}({v} - {k}) is {coefficient}"
         + (f" · (1 + {show_number(drift)}/{v} + …)" if drift else "")
     ]
     steps.append(f"the product of the coefficients is Θ({show(rec, base)}) (Stirling)")
     growth = _homogeneous(rec, base, others, steps)
-    steps.append(f"T({v}) = Θ({show(rec, growth)})")
+    steps.append(f"{rec.function}({v}) = Θ({show(rec, growth)})")
     return Derivation(growth, "first-order recurrence (product of the coefficients)", tuple(steps))
 
 

@@ -7,11 +7,9 @@ from fractions import Fraction
 
 from pytest_growthbudget.bounds.enclosure import compare_numbers, to_float
 from pytest_growthbudget.bounds.exact import ONE, Number, depends_on
-from pytest_growthbudget.bounds.growth import CONSTANT, Factor, monomial
+from pytest_growthbudget.bounds.growth import CLASS, CONSTANT, Factor, monomial
 from pytest_growthbudget.bounds.printing import show_monomial
 from pytest_growthbudget.bounds.recurrence import Decrease, Ratio, Recurrence, Root, Term
-
-CLASS = "c^n n^p log^q n (log log n)^r n!^s"
 
 
 class Unsolved(Exception):
@@ -69,7 +67,7 @@ def toll_text(rec: Recurrence) -> str:
 
 def needs_cost(rec: Recurrence) -> None:
     if rec.toll is None and rec.silent:
-        raise Unsolved("T is zero throughout: the base cases are zero and there is no toll")
+        raise Unsolved(f"{rec.function} is zero at some sizes or all: a base case is zero and there is no toll")
 
 
 def known(term: Term) -> Number:

@@ -11,7 +11,6 @@ from fractions import Fraction
 
 from pytest_growthbudget.bounds import roots
 from pytest_growthbudget.bounds.derivation import (
-    CLASS,
     Derivation,
     Unsolved,
     accumulate,
@@ -26,9 +25,9 @@ from pytest_growthbudget.bounds.derivation import (
 )
 from pytest_growthbudget.bounds.enclosure import compare_numbers, sign, to_float
 from pytest_growthbudget.bounds.exact import ONE, Number, depends_on, exp_number
-from pytest_growthbudget.bounds.growth import CONSTANT, Factor
+from pytest_growthbudget.bounds.growth import CLASS, CONSTANT, Factor
 from pytest_growthbudget.bounds.printing import show_number
-from pytest_growthbudget.bounds.recurrence import Decrease, Ratio, Recurrence, Shrink, Term
+from pytest_growthbudget.bounds.recurrence import Ratio, Recurrence, Term
 from pytest_growthbudget.bounds.roots import ln_with_surds
 
 
@@ -54,13 +53,12 @@ def dividing(rec: Recurrence) -> Derivation | None:
         needs_cost(rec)
         growth = Factor(power=p)
         steps.append(
-            f"no toll: T({v}) = Θ({show(rec, growth)})"
+            f"no toll: {rec.function}({v}) = Θ({show(rec, growth)})"
             if toll is None
             else f"the toll {toll_text(rec)} vanishes faster than any power"
         )
-        return Derivation(growth, _name(main, -1, None), (*steps, f"T({v}) = Θ({show(rec, growth)})"), p)
+        return Derivation(growth, _name(main, -1, None), (*steps, f"{rec.function}({v}) = Θ({show(rec, growth)})"), p)
     shown, leaf = toll_text(rec), show(rec, Factor(power=p))
-    density = Factor(power=toll.power - p - 1, log=toll.log, loglog=toll.loglog)
     if relation < 0:
         growth = Factor(power=p)
         steps.append(f"the toll {shown} is polynomially smaller than {leaf}: the base cases dominate")
@@ -74,7 +72,7 @@ def dividing(rec: Recurrence) -> Derivation | None:
         growth = Factor(power=p) * total
         steps.append(f"the toll {shown} matches {leaf} up to logarithms")
         steps.append(f"∫ toll/u^(p+1) du with toll/u^(p+1) = {show(rec, density)}: {why}")
-    return Derivation(growth, _name(main, relation, toll), (*steps, f"T({v}) = Θ({show(rec, growth)})"), p)
+    return Derivation(growth, _name(main, relation, toll), (*steps, f"{rec.function}({v}) = Θ({show(rec, growth)})"), p)
 
 
 def _settled(term: Term) -> bool:
@@ -143,8 +141,6 @@ def _check_minor(rec: Recurrence, minor: list[Term], p: Number, relation: int, s
     """
     e = rec.toll.power if relation > 0 and rec.toll is not None else p
     for term in minor:
-        if isinstance(term.argument, (Decrease, Shrink)):
-            raise Unsolved("calls of n/b beside calls of n - k are not solved here")
         f = term.growth
         if f.rate or f.factorial:
             if Factor(f.factorial, f.rate).sign() < 0:
@@ -168,7 +164,7 @@ def _only_toll(rec: Recurrence) -> Derivation:
     if rec.toll is None or rec.toll.rate or rec.toll.factorial:
         raise Unsolved(f"variable coefficients of calls of n/b take the solution outside the class {CLASS}")
     for term in rec.terms:
-        if isinstance(term.argument, (Decrease, Shrink)) or term.growth.rate or term.growth.factorial:
+        if term.growth.rate or term.growth.factorial:
             raise Unsolved(f"these coefficients take the solution outside the class {CLASS}")
         theta = ONE if isinstance(term.argument, Ratio) else root(term).exponent
         side = compare_numbers(term.growth.power + theta * rec.toll.power, rec.toll.power)
@@ -178,7 +174,10 @@ def _only_toll(rec: Recurrence) -> Derivation:
     return Derivation(
         rec.toll,
         "dominant toll (regularity condition)",
-        (f"every call adds less than any fixed part of the toll {shown}", f"T({rec.variable}) = Θ({shown})"),
+        (
+            f"every call adds less than any fixed part of the toll {shown}",
+            f"{rec.function}({rec.variable}) = Θ({shown})",
+        ),
     )
 
 

@@ -6,6 +6,7 @@ import math
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field
 from fractions import Fraction
+from functools import reduce
 from typing import Literal
 
 from pytest_growthbudget.bounds.enclosure import compare_numbers, sign, to_float
@@ -62,13 +63,13 @@ class Factor:
         n = max(n, 1)
         log_n = math.log(n)
         if log_n > 700.0 and (self.factorial or self.rate or math.isinf(log_n)):
-            return math.inf * self.sign() if self.sign() else 0.0
+            return math.inf * self.sign()
         factorial, rate, power, log, loglog = (to_float(x) for x in self.parts())
         total = power * log_n
         if rate:
             total += rate * n
         if factorial:
-            total += factorial * (math.lgamma(n + 1.0) if n < 1e15 else n * (log_n - 1.0))
+            total += factorial * math.lgamma(n + 1.0)
         log_2 = max(log_n / _LN2, 1.0)
         if log:
             total += log * math.log(log_2)
@@ -79,6 +80,8 @@ class Factor:
 
 _LN2 = math.log(2.0)
 CONSTANT = Factor()
+#: The class as messages name it.
+CLASS = "c^n n^p log^q n (log log n)^r n!^s"
 Monomial = tuple[tuple[str, Factor], ...]
 
 
@@ -172,19 +175,10 @@ class Growth:
         return top + math.log(sum(math.exp(v - top) for v in values))
 
 
-def dominant(terms: Iterable[tuple[Monomial, float]]) -> Growth:
-    """The sum without the monomials that another one bounds."""
-    kept: list[tuple[Monomial, float]] = []
-    for m, w in terms:
-        if any(compare_monomials(m, k) == -1 for k, _ in kept):
-            continue
-        equal = [i for i, (k, _) in enumerate(kept) if compare_monomials(m, k) == 0]
-        if equal:
-            kept[equal[0]] = (kept[equal[0]][0], kept[equal[0]][1] + w)
-            continue
-        kept = [(k, v) for k, v in kept if compare_monomials(k, m) != -1]
-        kept.append((m, w))
-    return Growth(tuple(m for m, _ in kept), tuple(w for _, w in kept))
+def growth_along(growth: Growth, weights: Mapping[str, Fraction]) -> Factor:
+    """The fastest of the parts in one scale, as `along` has it."""
+    factors = (along(m, weights) for m in growth.monomials)
+    return reduce(lambda best, f: f if compare_factors(f, best) > 0 else best, factors)
 
 
 def _below_a_mean(m: Monomial, others: list[Monomial]) -> bool:
@@ -224,8 +218,7 @@ def bounded_by(a: Growth, b: Growth) -> bool | None:
 def _outgrows(a: Growth, b: Growth, weights: Mapping[str, Fraction]) -> bool:
     """Whether a is proved to grow faster than b along one ray."""
     try:
-        top = _largest(along(m, weights) for m in a.monomials)
-        return compare_factors(top, _largest(along(m, weights) for m in b.monomials)) > 0
+        return compare_factors(growth_along(a, weights), growth_along(b, weights)) > 0
     except Undecidable:
         return False
 
@@ -235,14 +228,6 @@ def _covered(m: Monomial, b: Growth) -> bool:
     return any(compare_monomials(m, k) in (-1, 0) for k in others) or (
         1 < len(others) <= 8 and _below_a_mean(m, others)
     )
-
-
-def _largest(factors: Iterable[Factor]) -> Factor:
-    best: Factor | None = None
-    for f in factors:
-        if best is None or compare_factors(f, best) > 0:
-            best = f
-    return best if best is not None else CONSTANT
 
 
 def _rays(names: list[str]) -> Iterable[dict[str, Fraction]]:

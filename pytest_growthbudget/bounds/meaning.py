@@ -20,7 +20,7 @@ from pytest_growthbudget.bounds.exact import (
     power_number,
     symbol,
 )
-from pytest_growthbudget.bounds.growth import Growth, Monomial, dominant
+from pytest_growthbudget.bounds.growth import Growth, Monomial
 from pytest_growthbudget.bounds.language import BoundError
 from pytest_growthbudget.bounds.roots import ln_with_surds, solve
 from pytest_growthbudget.bounds.tree import (
@@ -271,7 +271,8 @@ class Meaning:
     def growth(self, value: Value, node: Node) -> Growth:
         """The leading growth of a value."""
         try:
-            return dominant((m, _weight(c, m)) for m, c in v.leading(value))
+            parts = v.leading(value)
+            return Growth(tuple(m for m, _ in parts), tuple(_weight(c, m) for m, c in parts))
         except (Outside, Undecidable) as reason:
             message = str(reason)
             hint = "a bound must be positive for all large sizes" if "positive" in message or "zero" in message else ""

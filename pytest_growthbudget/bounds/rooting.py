@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from pytest_growthbudget.bounds.derivation import (
-    CLASS,
     Derivation,
     Unsolved,
     accumulate,
@@ -17,7 +16,7 @@ from pytest_growthbudget.bounds.derivation import (
 from pytest_growthbudget.bounds.dividing import critical
 from pytest_growthbudget.bounds.enclosure import compare_numbers, sign
 from pytest_growthbudget.bounds.exact import ONE, ZERO, Number
-from pytest_growthbudget.bounds.growth import Factor
+from pytest_growthbudget.bounds.growth import CLASS, Factor
 from pytest_growthbudget.bounds.printing import show_number
 from pytest_growthbudget.bounds.recurrence import Recurrence, Root, Term
 from pytest_growthbudget.bounds.roots import ln_with_surds
@@ -84,7 +83,7 @@ def rooting(rec: Recurrence) -> Derivation | None:
         total = Factor(log=p, loglog=inner.log)
         steps.append(f"the toll matches m^p up to logarithms of m: {why}")
     growth = shift * total
-    steps.append(f"T({v}) = Θ({show(rec, growth)})")
+    steps.append(f"{rec.function}({v}) = Θ({show(rec, growth)})")
     return Derivation(
         growth,
         "substitution m = log n, then Akra-Bazzi"
@@ -118,6 +117,6 @@ def _root_toll(rec: Recurrence) -> Derivation | None:
         "dominant toll (regularity condition)",
         (
             f"every call's own toll is smaller than {shown} by a power of {rec.variable}",
-            f"T({rec.variable}) = Θ({shown})",
+            f"{rec.function}({rec.variable}) = Θ({shown})",
         ),
     )

@@ -7,7 +7,6 @@ from __future__ import annotations
 
 from pytest_growthbudget.bounds.decreasing import decreasing
 from pytest_growthbudget.bounds.derivation import (
-    CLASS,
     Derivation,
     Unsolved,
     accumulate,
@@ -17,7 +16,7 @@ from pytest_growthbudget.bounds.derivation import (
     toll_text,
 )
 from pytest_growthbudget.bounds.dividing import dividing
-from pytest_growthbudget.bounds.growth import CONSTANT
+from pytest_growthbudget.bounds.growth import CLASS, CONSTANT
 from pytest_growthbudget.bounds.recurrence import Ratio, Recurrence, Root, Shrink
 from pytest_growthbudget.bounds.rooting import rooting
 
@@ -54,7 +53,7 @@ def dominant_toll(rec: Recurrence) -> Derivation | None:
         (
             f"the toll {toll} outgrows every power of {rec.variable}; the arguments are at most a part of it",
             f"regularity: the calls' own tolls add up to at most half of {toll} for large {rec.variable}",
-            f"T({rec.variable}) = Θ({toll})",
+            f"{rec.function}({rec.variable}) = Θ({toll})",
         ),
     )
 
@@ -74,15 +73,15 @@ def shrinking(rec: Recurrence) -> Derivation | None:
     v = rec.variable
     step = term.argument.by
     if rec.toll is None:
-        return Derivation(CONSTANT, "summation", (f"no toll: T({v}) is that of the base case",))
+        return Derivation(CONSTANT, "summation", (f"no toll: {rec.function}({v}) is that of the base case",))
     total, why = accumulate(rec.toll.over(step))
     return Derivation(
         total,
         "summation",
         (
-            f"steps of size Θ({show(rec, step)}): T({v}) = Θ(1 + ∫ toll/step)",
+            f"steps of size Θ({show(rec, step)}): {rec.function}({v}) = Θ(1 + ∫ toll/step)",
             f"toll/step = {show(rec, rec.toll.over(step))}",
             why,
-            f"T({v}) = Θ({show(rec, total)})",
+            f"{rec.function}({v}) = Θ({show(rec, total)})",
         ),
     )

@@ -23,6 +23,7 @@ from pytest_growthbudget.bounds.exact import (
     symbol,
 )
 from pytest_growthbudget.bounds.growth import (
+    CLASS,
     CONSTANT,
     Factor,
     Monomial,
@@ -320,7 +321,7 @@ def exp(value: Value) -> Value:
         if depends_on(c, ("some",)):
             raise Outside("an exponent has to be known exactly, and this one is known up to a factor")
         if len(m) != 1:
-            raise Outside("an exponential of a product of sizes is outside the class c^n n^p log^q n log log^r n n!^s")
+            raise Outside(f"an exponential of a product of sizes is outside the class {CLASS}")
         name, f = m[0]
         if f == _N_LOG:
             inexact = True
@@ -332,7 +333,7 @@ def exp(value: Value) -> Value:
         elif f == _LOGLOG:
             out = multiply(out, monomial({name: Factor(log=c)}))
         else:
-            raise Outside("this exponent takes the growth outside the class c^n n^p log^q n log log^r n n!^s")
+            raise Outside(f"this exponent takes the growth outside the class {CLASS}")
     return Value({out: unknown() if inexact else factor}, tuple(multiply(out, m) for m in _maximal(vanishing)))
 
 

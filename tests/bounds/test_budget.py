@@ -44,6 +44,13 @@ def test_log_growth_never_falls(text: str) -> None:
         ("n^1.5 / log n", 2**20, 30 * math.log(2) - math.log(20)),
         ("log log n", 2**16, math.log(4)),
         ("1", 7, 0.0),
+        ("n log n", 0.25, 0.0),
+        ("log n", 2, 0.0),
+        ("log log n", 4, 0.0),
+        ("log n log log n", 2**16, math.log(64)),
+        ("2^n", 10**400, math.inf),
+        ("n! / 2^n", 10**400, math.inf),
+        ("2^n / n!", 10**400, -math.inf),
     ],
 )
 def test_log_growth_value(text: str, n: float, expected: float) -> None:
@@ -67,6 +74,8 @@ def test_sums_keep_their_written_weights() -> None:
         ("V + E", ["V", "E"], "λ"),
         ("n m", ["n", "m"], "λ^2"),
         ("n m", ["m"], "m"),
+        ("n m", ["n"], "n"),
+        ("m log log n", ["n", "m"], "λ log log λ"),
         ("(V + E) log V", ["V", "E"], "λ log λ"),
         ("(V + E) log V", ["E"], "E"),
         ("V^2 + E", ["E"], "E"),

@@ -138,13 +138,13 @@ by_input = pytest.mark.parametrize("entry", ENTRIES, ids=[e["input"] for e in EN
 
 @by_input
 def test_growth_is_the_expected_one(entry: dict[str, Any]) -> None:
-    """Every exponent agrees with the entry's to ten digits, and the growth printed reads back to itself."""
+    """Every exponent agrees with the entry's to ten digits, by the theorem named; the growth reads back to itself."""
     budget = parse_budget(entry["input"])
     assert budget.kind == "recurrence"
     (term,) = budget.terms()
     (found,) = term.values()
     assert found == pytest.approx(entry["expect"], rel=1e-10, abs=1e-10)
-    assert budget.theorem
+    assert budget.theorem == entry["theorem"]
     assert budget.steps[-1].endswith(f"Θ({budget.theta})")
     assert parse_budget(budget.theta).growth.monomials == budget.growth.monomials
 
