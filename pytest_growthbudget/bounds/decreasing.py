@@ -17,7 +17,7 @@ from pytest_growthbudget.bounds.derivation import (
     toll_text,
 )
 from pytest_growthbudget.bounds.enclosure import compare_numbers, sign, to_float
-from pytest_growthbudget.bounds.exact import ONE, ZERO, Number, depends_on, exp_number
+from pytest_growthbudget.bounds.exact import ONE, Number, depends_on, exp_number
 from pytest_growthbudget.bounds.growth import CLASS, CONSTANT, Factor
 from pytest_growthbudget.bounds.printing import show_number
 from pytest_growthbudget.bounds.recurrence import Decrease, Recurrence, Shrink, Term
@@ -90,7 +90,7 @@ def _characteristic(rec: Recurrence, down: list[Term], others: list[Term]) -> De
     parts: list[tuple[Number, Fraction]] = [(known(t), delay(t)) for t in down if isinstance(t.argument, Decrease)]
     if len(parts) == 1:
         a, k = parts[0]
-        rate = ln_with_surds(a) / k if a != 1 else ZERO
+        rate = ln_with_surds(a) / k
     else:
         rational = [(a, k) for a, k in parts if isinstance(a, Fraction)]
         if len(rational) < len(parts):
@@ -167,7 +167,7 @@ def _product(rec: Recurrence, down: list[Term], others: list[Term]) -> Derivatio
                 raise Unsolved("two calls of n - k weigh too evenly here for a proof")
             drift = drift + known(term) / (a * a)
     power = gamma * (ONE - 1 / k) / 2 + drift / k
-    base = Factor(factorial=gamma / k, rate=ln_with_surds(a) / k if a != 1 else ZERO, power=power)
+    base = Factor(factorial=gamma / k, rate=ln_with_surds(a) / k, power=power)
     shown = show(rec, Factor(power=gamma)) if gamma else ""
     coefficient = " ".join(x for x in ("" if a == 1 and shown else show_number(a), shown) if x)
     steps = [

@@ -118,7 +118,7 @@ def _split_steps(rec: Recurrence, main: list[Term], p: Number) -> list[str]:
     if any(not t.fixed() for t in main):
         steps.append("the coefficients differ from constants by factors 1 + O(n^-ε), whose product converges")
     factors = [ratio(t) for t in main]
-    if len(factors) > 1 and any(compare_numbers(f, factors[0]) for f in factors[1:]):
+    if any(compare_numbers(f, factors[0]) for f in factors[1:]):
         largest = max(factors, key=to_float)
         depth = -0.6931471805599453 / to_float(ln_with_surds(largest))
         steps.append(f"uneven split: the deepest branch is about {depth:.3g} log2 {v} calls long")

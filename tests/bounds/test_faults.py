@@ -117,6 +117,7 @@ def test_hostile_text_is_answered(text: str) -> None:
         ("V", "E"),
         ("V^2 + E", "V + E log V"),
         ("V E^3", "V^2 + E^3"),
+        ("V^3 / W", "V^2 + V W / E"),
         # The left side is larger only for E near V^2, V^5 and V^15.
         ("V E", "V^2.2 + E^1.4"),
         ("V E", "V^5 + E^1.15"),
@@ -145,8 +146,9 @@ def test_incomparable_growths_are_refused(a: str, b: str) -> None:
 )
 def test_an_order_without_proof_is_no_answer(a: str, b: str) -> None:
     """The left side is the smaller one, but not by a theorem that is known here."""
-    with pytest.raises(BoundError, match="no proof of the order of these two sums was found") as caught:
+    with pytest.raises(BoundError) as caught:
         compare(a, b)
+    assert caught.value.message == "no proof of the order of these two sums was found"
     assert caught.value.hint == "no answer is given without a proof"
 
 

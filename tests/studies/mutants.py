@@ -5,8 +5,8 @@
 The changes are those of mutmut. It cannot run them here: it names the tests of each mutant on pytest's command line
 and collects them anew (ten seconds a mutant with these parametrized corpora), and leaves out functions with a
 decorator. So the tests are collected once; each mutant is a fork in which the function's code is exchanged, and runs
-the tests that reach the changed line, shortest first, to the first failure. Left out are changes of the case of a
-string alone, which is changed as a whole too, and of `strict=` in `zip`, which only checks.
+the tests that reach the changed lines, shortest first, to the first failure. Left out are defaults of arguments, the
+case of a string, which is changed as a whole too, and `strict=` in `zip`, which only checks.
 """
 
 from __future__ import annotations
@@ -24,6 +24,7 @@ import re
 import resource
 import signal
 import sys
+import textwrap
 import time
 from collections import Counter
 from collections.abc import Callable, Iterator, Sequence
@@ -47,11 +48,12 @@ Covering = dict[tuple[str, int], list[tuple[float, str]]]
 
 @dataclass(frozen=True)
 class Mutant:
-    """One changed function: `name` in its module; `lines`, those of the change and of the statement around it."""
+    """One changed function: `name` in its module; the lines of the change; the first line of its statement."""
 
     path: Path
     name: str
-    lines: tuple[int, int]
+    lines: range
+    statement: int
     before: str
     after: str
 
@@ -84,19 +86,21 @@ def mutants_of(path: Path) -> list[Mutant]:
         function = change.contained_by_top_level_function
         if not isinstance(function, cst.FunctionDef):
             continue
+        changed = deep_replace(function, change.original_node, change.mutated_node)
+        if not function.params.deep_equals(cst.ensure_type(changed, cst.FunctionDef).params):
+            continue
         name = function.name.value
         owner = owners.get(function)
-        before, after = (
-            cst.Module([node]).code.strip("\n")
-            for node in (function, deep_replace(function, change.original_node, change.mutated_node))
-        )
+        before, after = (cst.Module([node]).code.strip("\n") for node in (function, changed))
         if _idle(before, after):
             continue
         statement = change.original_node
         while not isinstance(statement, (cst.SimpleStatementLine, cst.BaseCompoundStatement)):
             statement = parents[statement]
-        places = (lines[change.original_node].start.line, lines[statement].start.line)
-        out.append(Mutant(path, f"{owner}.{name}" if owner else name, places, before, after))
+        place = lines[change.original_node]
+        reach = range(place.start.line, place.end.line + 1)
+        full = f"{owner}.{name}" if owner else name
+        out.append(Mutant(path, full, reach, lines[statement].start.line, before, after))
     return out
 
 
@@ -112,12 +116,15 @@ def function_of(mutant: Mutant) -> FunctionType:
 
 
 def changed_code(mutant: Mutant) -> CodeType:
-    """The mutant's code. Its lines count from 1; nothing in the tests looks at them."""
+    """The mutant's code, compiled as a method if it is one. Its lines are not those of the file."""
     place: dict[str, Any] = {}
     function = cst.ensure_type(cst.parse_module(mutant.after).body[0], cst.FunctionDef)
     source = cst.Module([function.with_changes(decorators=[])]).code
+    owner, _, name = mutant.name.rpartition(".")
+    if owner:
+        source = f"class {owner}:\n" + textwrap.indent(source, "    ")
     exec(compile("from __future__ import annotations\n" + source, str(mutant.path), "exec"), place)
-    code = place[mutant.name.rpartition(".")[2]].__code__
+    code = (vars(place[owner]) if owner else place)[name].__code__
     assert isinstance(code, CodeType)
     return code
 
@@ -148,21 +155,27 @@ class Study:
         covering = _in_fork(lambda: _covered(list(items.values()), self.sources, clear))
         gc.freeze()
         for mutant in self.mutants:
+            file = str(mutant.path.resolve())
+            tests = {test for line in mutant.lines for test in covering.get((file, line), [])}
             # A line without code of its own, such as a constant in a tuple, is reached with its statement.
-            reached = (covering.get((str(mutant.path.resolve()), line), []) for line in mutant.lines)
-            tests = sorted(next(filter(None, reached), []))
-            outcome = _outcome(mutant, [(seconds, items[name]) for seconds, name in tests])
+            tests = tests or set(covering.get((file, mutant.statement), []))
+            outcome = _outcome(mutant, [(seconds, items[name]) for seconds, name in sorted(tests)])
             self.outcomes.append((mutant, outcome))
             if self.record is not None:
                 with self.record.open("a", encoding="utf-8") as out:
                     out.write(json.dumps([mutant.name, mutant.difference(), outcome]) + "\n")
             if outcome in ("survived", "no test"):
-                print(f"{outcome}: {mutant.path}:{mutant.lines[0]} {mutant.name}\n{mutant.difference()}", flush=True)
+                print(f"{outcome}: {mutant.path}:{mutant.lines.start} {mutant.name}\n{mutant.difference()}", flush=True)
         return True
 
 
 def _passes(item: pytest.Item) -> bool:
     return not any(report.failed for report in runtestprotocol(item, log=False, nextitem=None))
+
+
+def _passes_in_time(item: pytest.Item, seconds: float) -> bool:
+    signal.setitimer(signal.ITIMER_VIRTUAL, 2 + 10 * seconds)
+    return _passes(item)
 
 
 def _covered(items: Sequence[pytest.Item], sources: Sequence[Path], clear: Sequence[Callable[[], None]]) -> Covering:
@@ -208,23 +221,20 @@ def _in_fork(work: Callable[[], Covering]) -> Covering:
 def _outcome(mutant: Mutant, tests: Sequence[tuple[float, pytest.Item]]) -> str:
     if not tests:
         return "no test"
-    function, code = function_of(mutant), changed_code(mutant)
+    function = function_of(mutant)
+    sound, function.__code__ = function.__code__, changed_code(mutant)
     child = os.fork()
     if not child:
-        os.dup2(os.open(os.devnull, os.O_WRONLY), 1)
-        os.dup2(1, 2)
-        resource.setrlimit(resource.RLIMIT_AS, (MEMORY, MEMORY))
-        function.__code__ = code
-        for seconds, item in tests:
-            signal.setitimer(signal.ITIMER_VIRTUAL, 2 + 10 * seconds)
-            try:
-                fine = _passes(item)
-            except BaseException:
-                fine = False
-            if not fine:
-                os._exit(1)
-        os._exit(0)
+        killed = True
+        try:
+            os.dup2(os.open(os.devnull, os.O_WRONLY), 1)
+            os.dup2(1, 2)
+            resource.setrlimit(resource.RLIMIT_AS, (MEMORY, MEMORY))
+            killed = any(not _passes_in_time(item, seconds) for seconds, item in tests)
+        finally:
+            os._exit(killed)
     _, status = os.waitpid(child, 0)
+    function.__code__ = sound
     if os.WIFSIGNALED(status):
         return "timed out" if os.WTERMSIG(status) == signal.SIGVTALRM else "killed"
     return "killed" if os.WEXITSTATUS(status) else "survived"
