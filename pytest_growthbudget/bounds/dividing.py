@@ -114,7 +114,7 @@ def _split_steps(rec: Recurrence, main: list[Term], p: Number) -> list[str]:
     else:
         steps = [f"critical exponent: {equation} = 1 gives p = {show_number(p)}{approximately(p)}"]
     if any(isinstance(t.argument, Ratio) and t.argument.perturbed for t in main):
-        steps.append(f"rounding and shifts stay below {v}/log^2 {v}, so they do not matter (Leighton 1996)")
+        steps.append(f"rounding and shifts are O({v}/log^(1+ε) {v}), so they do not matter (Leighton 1996)")
     if any(not t.fixed() for t in main):
         steps.append("the coefficients differ from constants by factors 1 + O(n^-ε), whose product converges")
     factors = [ratio(t) for t in main]

@@ -128,13 +128,13 @@ def read_term(meaning: Meaning, coefficient: Value, call: Call, variable: str) -
         remainder: Factor | None = None
         rest = v.relative_rest(coefficient, m, constant)
         for k, c in rest.terms.items():
-            f = dict(k).get(variable, CONSTANT)
+            f = dict(k)[variable]
             if f == Factor(power=-ONE):
                 drift = c
             elif remainder is None or compare_factors(f, remainder) > 0:
                 remainder = f
         for k in rest.errors:
-            f = dict(k).get(variable, CONSTANT)
+            f = dict(k)[variable]
             if remainder is None or compare_factors(f, remainder) > 0:
                 remainder = f
     except Outside as reason:
@@ -202,11 +202,11 @@ def _ratio(meaning: Meaning, call: Call, c: Number, rest: Value, variable: str) 
     for k in parts:
         f = dict(k).get(variable, CONSTANT)
         small = compare_numbers(f.power, ONE) < 0 or compare_numbers(f.log, -ONE) < 0
-        if f.rate or f.factorial or compare_monomials(k, bound) != -1 or not small:
+        if compare_monomials(k, bound) != -1 or not small:
             meaning.fail(
                 "the argument strays too far from a fixed part of the size",
                 call.argument,
-                "the perturbation must stay below n / log^2 n (Leighton 1996)",
+                "the perturbation must be O(n / log^(1+ε) n) (Leighton 1996)",
             )
     return Ratio(c, bool(parts))
 
@@ -224,8 +224,10 @@ def _decrease(meaning: Meaning, call: Call, rest: Value, shown: str, variable: s
         if rest.errors or len(rest.terms) > 1 or not isinstance(d, Fraction):
             meaning.fail(f"the argument {shown} has to be n - k with a rational k", call.argument)
         return Decrease(d)
+    if depends_on(d, ("some",)):
+        meaning.fail(f"the argument {shown} is not known exactly enough", call.argument)
     by = dict(m)[variable]
-    if by.sign() < 0 or depends_on(d, ("some",)):
+    if by.sign() < 0:
         _refuse_growing(meaning, call, shown, variable)
     return Shrink(by)
 

@@ -143,20 +143,52 @@ def test_recurrence_from_numbers(
     assert from_recurrence(Recurrence.of(terms, toll)).theta == expected
 
 
+def test_a_recurrence_from_numbers_keeps_its_variable() -> None:
+    budget = from_recurrence(Recurrence.of([(2, Ratio(Fraction(1, 2)))], Factor(power=Fraction(1)), "m"))
+    assert (budget.theta, budget.variables) == ("m log m", ("m",))
+    assert from_recurrence(Recurrence.of([(2, Ratio(Fraction(1, 2)))])).variables == ("n",)
+
+
+@pytest.mark.parametrize("coefficient", [0, -1])
+def test_coefficients_that_are_not_positive_are_refused(coefficient: int) -> None:
+    with pytest.raises(ValueError, match=rf"^the coefficient {coefficient} is not positive$"):
+        Recurrence.of([(coefficient, Ratio(Fraction(1, 2)))])
+
+
 @pytest.mark.parametrize(
-    ("terms", "message"),
+    "argument",
     [
-        ([(0, Ratio(Fraction(1, 2)))], "not positive"),
-        ([(1, Ratio(Fraction(1)))], "does not shrink"),
-        ([(1, Decrease(Fraction(0)))], "does not shrink"),
-        ([(1, Root(Fraction(3, 2)))], "does not shrink"),
-        ([], "needs a term"),
+        Ratio(Fraction(0)),
+        Ratio(Fraction(1)),
+        Ratio(Fraction(-1, 2)),
+        Decrease(Fraction(0)),
+        Decrease(Fraction(-1)),
+        Root(Fraction(1)),
+        Root(Fraction(3, 2)),
+        Root(Fraction(-1, 2)),
+        Shrink(Factor()),
+        Shrink(Factor(power=Fraction(-1))),
+        Shrink(Factor(power=Fraction(1))),
+        Shrink(Factor(power=Fraction(2))),
     ],
+    ids=str,
 )
-def test_impossible_numbers_are_refused(terms: list[tuple[int, Ratio | Decrease | Root]], message: str) -> None:
-    """Coefficients and arguments are checked where they enter."""
-    with pytest.raises(ValueError, match=message):
-        Recurrence.of(terms)
+def test_arguments_that_do_not_shrink_are_refused(argument: Ratio | Decrease | Root | Shrink) -> None:
+    """Numbers are checked where they enter."""
+    with pytest.raises(ValueError, match=r"does not shrink$") as caught:
+        Recurrence.of([(1, argument)])
+    assert str(caught.value) == f"the argument {argument} does not shrink"
+
+
+def test_a_recurrence_without_calls_is_refused() -> None:
+    with pytest.raises(ValueError, match=r"^a recurrence needs a term$"):
+        Recurrence.of([])
+
+
+def test_a_logarithm_as_argument_is_a_root_of_exponent_zero() -> None:
+    """It is read, and refused only where it decides."""
+    toll = Factor(power=Fraction(1))
+    assert from_recurrence(Recurrence.of([(1, Root(Fraction(0), plain=False))], toll)).theta == "n"
 
 
 def test_unsolved_numbers_say_why() -> None:
