@@ -86,8 +86,8 @@ def _doubling(budget: Budget) -> list[str]:
 
 
 def _from_log(x: float) -> str:
-    """exp(x) to four digits, as a power of ten where it is large."""
-    if abs(x) < 13.8:
+    """exp(x) to four digits, as a power of ten where it is large or small."""
+    if -9.2 < x < 13.8:
         value = math.exp(x)
         return f"{value:,.0f}" if value >= 1000 else f"{value:.4g}"
     if not math.isfinite(x):
@@ -112,14 +112,15 @@ def split_table(rec: Recurrence, budget: Budget) -> list[str]:
     if total <= 1:
         return []
     even = total ** (-1.0 / to_float(critical))
+    v, name = rec.variable, rec.function
     deepest = -math.log(2) / to_float(ln_number(max(ratios, key=to_float)))
     lines = [
         *textwrap.wrap(
-            f"the split is uneven: the deepest branch is about {deepest:.3g} log2 n calls long, "
-            f"{-math.log(2) / math.log(even):.3g} log2 n if every argument were {even:.4g} n",
+            f"the split is uneven: the deepest branch is about {deepest:.3g} log2 {v} calls long, "
+            f"{-math.log(2) / math.log(even):.3g} log2 {v} if every argument were {even:.4g} {v}",
             WIDTH,
         ),
-        f"{'n':>12}  {'T/growth, this split':>22}  {'T/growth, even split':>22}  {'costs':>8}",
+        f"{v:>12}  {f'{name}/growth, this split':>22}  {f'{name}/growth, even split':>22}  {'costs':>8}",
     ]
     growth = budget.derivation.growth if budget.derivation else CONSTANT
     for exponent in (8, 12, 16, 20):

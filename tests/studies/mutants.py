@@ -117,15 +117,14 @@ def function_of(mutant: Mutant) -> FunctionType:
 
 def changed_code(mutant: Mutant) -> CodeType:
     """The mutant's code, compiled as a method if it is one. Its lines are not those of the file."""
-    place: dict[str, Any] = {}
     function = cst.ensure_type(cst.parse_module(mutant.after).body[0], cst.FunctionDef)
     source = cst.Module([function.with_changes(decorators=[])]).code
     owner, _, name = mutant.name.rpartition(".")
     if owner:
         source = f"class {owner}:\n" + textwrap.indent(source, "    ")
-    exec(compile("from __future__ import annotations\n" + source, str(mutant.path), "exec"), place)
-    code = (vars(place[owner]) if owner else place)[name].__code__
-    assert isinstance(code, CodeType)
+    code = compile("from __future__ import annotations\n" + source, str(mutant.path), "exec")
+    for step in filter(None, (owner, name)):
+        code = next(c for c in code.co_consts if isinstance(c, CodeType) and c.co_name == step)
     return code
 
 
