@@ -109,9 +109,7 @@ class Real:
             return make(_poly_mul(self.num, other.den), _poly_mul(self.den, other.num))
         return make(_scale(self.num, 1 / Fraction(other)), self.den)
 
-    def __rtruediv__(self, other: Number | int) -> Number:
-        if isinstance(other, Real):
-            return other / self
+    def __rtruediv__(self, other: Fraction | int) -> Number:
         return make(_scale(self.den, Fraction(other)), self.num) if other else ZERO
 
 
@@ -157,7 +155,7 @@ def _poly_mul(a: Poly, b: Poly) -> Poly:
             if total:
                 out[mono] = total
             else:
-                out.pop(mono, None)
+                del out[mono]
     return out
 
 

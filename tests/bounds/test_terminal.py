@@ -58,6 +58,16 @@ def test_explain_lines(monkeypatch: pytest.MonkeyPatch) -> None:
         (b"n vs n^2", "slower"),
         (b"n | n^2", "slower"),
         (b"n , n^2", "slower"),
+        (b"n,n^2", "slower"),
+        (b"n\t\tn^2", "slower"),
+        (b"n || n^2", "slower"),
+        (b"n vs. n^2", "slower"),
+        (b"n   n^2", "slower"),
+        (b"n ; n^2", "slower"),
+        (b"  n\tn^2  ", "slower"),
+        (b"|n|\t|n|^2", "slower"),
+        (b"{x: x^2 = x + 1}^n\t2^n", "slower"),
+        (b'  ["n^2", "n"]', "faster"),
         (b"T(n) = 2T(n/2) + n; T(1) = 1\tn log n", "same"),
     ],
 )
@@ -67,6 +77,109 @@ def test_compare_lines(line: bytes, relation: str, monkeypatch: pytest.MonkeyPat
     answer = json.loads(out)
     assert (code, answer["relation"]) == (0, relation)
     assert set(answer) == {"a", "b", "relation"}
+
+
+def test_compare_lines_without_two_growths(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Neither JSON of the right form nor two parts; the other lines are answered."""
+    lines = ["n", "", "a\tb\tc", '["n"]', '["n", 3]', '{"a": "n", "b": 3}', '{"a": 3, "b": "n"}', '{"a": "n"}', '["n']
+    code, out, _ = _run(["compare", "-"], monkeypatch, "\n".join([*lines, "n\tn"]).encode())
+    answers = [json.loads(line) for line in out.splitlines()]
+    message = "expected two growths on a line, as a JSON list or parted by a tab"
+    assert code == 2
+    assert answers[0] == {"a": "n", "b": "", "error": {"message": message, "position": 0}}
+    assert [a["a"] for a in answers if "error" in a and a["b"] == ""] == [*lines[:4], lines[7], lines[8]]
+    assert [a.get("error", {}).get("in") for a in answers] == [None] * 4 + ["a", "a", "a"] + [None] * 3
+    assert answers[-1] == {"a": "n", "b": "n", "relation": "same"}
+
+
+@pytest.mark.parametrize(
+    ("line", "text"),
+    [
+        ("n^2", "n^2"),
+        ('"n^2"', "n^2"),
+        ('  "n^2"', "n^2"),
+        ('{"input": "n^2", "text": "n"}', "n^2"),
+        ('{"text": "n^2", "bound": "n"}', "n^2"),
+        ('{"bound": "n^2"}', "n^2"),
+        ('{"input": 3, "bound": "n^2"}', "n^2"),
+        ('{"other": "n^2"}', '{"other": "n^2"}'),
+        ('"n^2', '"n^2'),
+        ("[1]", "[1]"),
+        ("{" * 3000, "{" * 3000),
+        ('{"input": ' * 3000, '{"input": ' * 3000),
+    ],
+)
+def test_the_input_of_a_line(line: str, text: str, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Plain text, a JSON string, or the first text under a known key; anything else is taken as it stands."""
+    code, out, _ = _run(["explain", "-"], monkeypatch, line.encode())
+    answer = json.loads(out)
+    assert answer["input"] == text
+    assert code == (0 if text == "n^2" else 2)
+    assert ("error" in answer) == (text != "n^2")
+
+
+def test_lines_of_a_stream_of_text(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A standard input that was replaced by one without bytes; and a byte order mark, and ends of lines."""
+    out = io.StringIO()
+    monkeypatch.setattr(sys, "stdin", io.StringIO("n\r\nn^2"))
+    assert terminal.explain(["-"], out, io.StringIO()) == 0
+    assert [json.loads(line)["input"] for line in out.getvalue().splitlines()] == ["n", "n^2"]
+    code, text, _ = _run(["explain", "-"], monkeypatch, b"\xef\xbb\xbfn\r\n n \n")
+    assert code == 0
+    assert [json.loads(line)["input"] for line in text.splitlines()] == ["n", " n "]
+
+
+def test_one_answer_as_json(monkeypatch: pytest.MonkeyPatch) -> None:
+    """`--json` anywhere; a fault has its place, its end, a hint and the side at fault."""
+    error = {"message": "unknown function 'foo'", "position": 0, "end": 3}
+    code, out, said = _run(["explain", "foo(n)", "--json"], monkeypatch)
+    answer = json.loads(out)
+    assert (code, said, answer["input"]) == (2, "", "foo(n)")
+    assert answer["error"].items() >= error.items()
+    assert answer["error"]["hint"].startswith("known are log, ")
+    code, out, said = _run(["compare", "n^2", "--json", "n"], monkeypatch)
+    assert (code, said, json.loads(out)) == (0, "", {"a": "n^2", "b": "n", "relation": "faster"})
+    code, out, said = _run(["compare", "--json", "n", "foo(n)"], monkeypatch)
+    answer = json.loads(out)
+    assert (code, said, answer["a"], answer["b"]) == (2, "", "n", "foo(n)")
+    assert answer["error"].items() >= {**error, "in": "b"}.items()
+    code, out, _ = _run(["compare", "--json", "foo(n)", "foo(n)"], monkeypatch)
+    assert json.loads(out)["error"].items() >= {**error, "in": "a"}.items()
+
+
+@pytest.mark.parametrize(
+    ("a", "b", "sentence"),
+    [
+        ("n", "n^2", "n grows slower than n^2"),
+        ("2n", "n + 1", "n grows like n"),
+        ("n^2", "n", "n^2 grows faster than n"),
+    ],
+)
+def test_a_comparison_is_a_sentence(a: str, b: str, sentence: str, monkeypatch: pytest.MonkeyPatch) -> None:
+    assert _run(["compare", a, b], monkeypatch) == (0, sentence + "\n", "")
+
+
+def test_a_fault_of_a_comparison_goes_to_standard_error(monkeypatch: pytest.MonkeyPatch) -> None:
+    code, out, error = _run(["compare", "n", "n log"], monkeypatch)
+    assert (code, out) == (2, "")
+    assert error == "log needs an argument\n  n log\n    ~~^\n"
+
+
+@pytest.mark.parametrize(
+    ("arguments", "usage"),
+    [
+        (["explain"], terminal.EXPLAIN_USAGE),
+        (["explain", "n", "m"], terminal.EXPLAIN_USAGE),
+        (["explain", "--json"], terminal.EXPLAIN_USAGE),
+        (["compare", "n"], terminal.COMPARE_USAGE),
+        (["compare", "n", "m", "k"], terminal.COMPARE_USAGE),
+        (["compare", "n", "-", "k"], terminal.COMPARE_USAGE),
+    ],
+)
+def test_a_wrong_number_of_texts_is_told_the_usage(
+    arguments: list[str], usage: str, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    assert _run(arguments, monkeypatch) == (2, "", usage + "\n")
 
 
 def test_compare_faults(monkeypatch: pytest.MonkeyPatch) -> None:
