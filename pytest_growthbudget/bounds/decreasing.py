@@ -181,11 +181,10 @@ def _product(rec: Recurrence, down: list[Term], others: list[Term]) -> Derivatio
 
 
 def _summable(remainder: Factor | None, shift: bool = False) -> bool:
-    if remainder is None:
+    """Whether Σ remainder(m), or with `shift` Σ remainder(m)/m, converges; the remainder tends to 0."""
+    if remainder is None or remainder.factorial or remainder.rate:
         return True
-    if shift:
-        return remainder.sign() < 0 and accumulate(remainder * Factor(power=-ONE))[0] == CONSTANT
-    return remainder.sign() < 0 and (remainder.rate != 0 or accumulate(remainder)[0] == CONSTANT)
+    return accumulate(remainder * Factor(power=-ONE) if shift else remainder)[0] == CONSTANT
 
 
 def _check_summable(remainder: Factor | None) -> None:

@@ -79,6 +79,11 @@ def known(term: Term) -> Number:
     return term.coefficient
 
 
+def polynomially_small(remainder: Factor | None) -> bool:
+    """Whether a product of factors 1 + O(remainder) converges along n, n/2, … and along n, sqrt(n), … alike."""
+    return remainder is None or Factor(remainder.factorial, remainder.rate, remainder.power).sign() < 0
+
+
 def superpolynomial(f: Factor | None) -> bool:
     """Whether f grows faster than any power."""
     return f is not None and Factor(f.factorial, f.rate).sign() > 0

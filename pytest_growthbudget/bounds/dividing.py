@@ -17,13 +17,14 @@ from pytest_growthbudget.bounds.derivation import (
     approximately,
     known,
     needs_cost,
+    polynomially_small,
     ratio,
     root,
     show,
     superpolynomial,
     toll_text,
 )
-from pytest_growthbudget.bounds.enclosure import compare_numbers, sign, to_float
+from pytest_growthbudget.bounds.enclosure import compare_numbers, to_float
 from pytest_growthbudget.bounds.exact import ONE, Number, depends_on, exp_number
 from pytest_growthbudget.bounds.growth import CLASS, CONSTANT, Factor
 from pytest_growthbudget.bounds.printing import show_number
@@ -33,7 +34,11 @@ from pytest_growthbudget.bounds.roots import ln_with_surds
 
 def dividing(rec: Recurrence) -> Derivation | None:
     """Arguments b n (and negligible others): Akra-Bazzi, named after the Master theorem for a single term."""
-    main = [t for t in rec.terms if isinstance(t.argument, Ratio) and _settled(t)]
+    main = [
+        t
+        for t in rec.terms
+        if isinstance(t.argument, Ratio) and t.growth == CONSTANT and polynomially_small(t.remainder)
+    ]
     minor = [t for t in rec.terms if t not in main]
     if not any(isinstance(t.argument, Ratio) for t in rec.terms):
         return None
@@ -73,13 +78,6 @@ def dividing(rec: Recurrence) -> Derivation | None:
         steps.append(f"the toll {shown} matches {leaf} up to logarithms")
         steps.append(f"∫ toll/u^(p+1) du with toll/u^(p+1) = {show(rec, density)}: {why}")
     return Derivation(growth, _name(main, relation, toll), (*steps, f"{rec.function}({v}) = Θ({show(rec, growth)})"), p)
-
-
-def _settled(term: Term) -> bool:
-    """A constant coefficient up to a factor 1 + O(n^-ε), whose product along any branch converges."""
-    if term.growth != CONSTANT:
-        return False
-    return term.remainder is None or bool(term.remainder.rate) or sign(term.remainder.power) < 0
 
 
 def critical(pairs: list[tuple[Number, Number]], power: Number | None) -> tuple[Number, int]:

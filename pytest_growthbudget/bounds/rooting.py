@@ -9,6 +9,7 @@ from pytest_growthbudget.bounds.derivation import (
     approximately,
     known,
     needs_cost,
+    polynomially_small,
     root,
     show,
     toll_text,
@@ -18,7 +19,7 @@ from pytest_growthbudget.bounds.enclosure import compare_numbers, sign
 from pytest_growthbudget.bounds.exact import ONE, ZERO, Number
 from pytest_growthbudget.bounds.growth import CLASS, Factor
 from pytest_growthbudget.bounds.printing import show_number
-from pytest_growthbudget.bounds.recurrence import Recurrence, Root, Term
+from pytest_growthbudget.bounds.recurrence import Recurrence, Root
 from pytest_growthbudget.bounds.roots import ln_with_surds
 
 
@@ -41,7 +42,7 @@ def rooting(rec: Recurrence) -> Derivation | None:
             or term.growth.loglog
             or term.growth.rate
             or term.growth.factorial
-            or not _settled_root(term)
+            or not polynomially_small(term.remainder)
         ):
             raise Unsolved(f"this recursion into roots or logarithms of the size is outside the class {CLASS}")
         here = term.growth.power / (ONE - theta)
@@ -92,11 +93,6 @@ def rooting(rec: Recurrence) -> Derivation | None:
         tuple(steps),
         p,
     )
-
-
-def _settled_root(term: Term) -> bool:
-    """1 + O(n^-ε) along n, n^θ, …: the sizes fall doubly exponentially, so the product converges."""
-    return term.remainder is None or bool(term.remainder.rate) or sign(term.remainder.power) < 0
 
 
 def _root_toll(rec: Recurrence) -> Derivation | None:
