@@ -26,7 +26,7 @@ from pytest_growthbudget.bounds.exact import (
 from pytest_growthbudget.bounds.printing import show_fraction, show_number
 from pytest_growthbudget.bounds.roots import growth_rate, solve
 
-PRINTED: dict[str, str] = json.loads((Path(__file__).parent / "valid" / "printed.json").read_text("utf-8"))
+PRINTED = json.loads((Path(__file__).parent / "valid" / "printed.json").read_text("utf-8"))
 FRACTIONS = st.fractions(min_value=-9, max_value=9, max_denominator=12)
 CONSTANTS: list[Number] = [
     ln_fraction(Fraction(2)),
@@ -43,11 +43,11 @@ CONSTANTS: list[Number] = [
 ]
 
 
-@pytest.mark.parametrize("text", PRINTED)
-def test_a_growth_is_written_in_its_one_form(text: str) -> None:
+@pytest.mark.parametrize("entry", PRINTED, ids=[e["input"] for e in PRINTED])
+def test_a_growth_is_written_in_its_one_form(entry: dict[str, str]) -> None:
     """Simplest spellings of exponents, bases and products; quotients for what falls."""
-    theta = parse_budget(text).theta
-    assert theta == PRINTED[text]
+    theta = parse_budget(entry["input"]).theta
+    assert theta == entry["theta"]
     assert parse_budget(theta).theta == theta
 
 
