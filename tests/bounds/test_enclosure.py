@@ -35,7 +35,6 @@ from pytest_growthbudget.bounds.exact import (
 
 COMMON = settings(max_examples=50, deadline=None, derandomize=True)
 DIGITS = 12
-ON = Arithmetic(DIGITS)
 EVERYTHING = (Decimal("-Infinity"), Decimal("Infinity"))
 DECIMALS = st.integers(-(10**9), 10**9).map(lambda i: Decimal(i).scaleb(-4))
 POSITIVE = st.integers(1, 10**9).map(lambda i: Decimal(i).scaleb(-4))
@@ -55,36 +54,40 @@ def _is_around(found: Interval, low: Fraction | mpmath.mpf, high: Fraction | mpm
 @COMMON
 @given(_pairs(DECIMALS), _pairs(DECIMALS))
 def test_sums_and_products_are_rounded_outward(a: Interval, b: Interval) -> None:
-    _is_around(ON.add(a, b), Fraction(a[0]) + Fraction(b[0]), Fraction(a[1]) + Fraction(b[1]))
+    on = Arithmetic(DIGITS)
+    _is_around(on.add(a, b), Fraction(a[0]) + Fraction(b[0]), Fraction(a[1]) + Fraction(b[1]))
     products = [Fraction(x) * Fraction(y) for x in a for y in b]
-    _is_around(ON.mul(a, b), min(products), max(products))
+    _is_around(on.mul(a, b), min(products), max(products))
 
 
 @COMMON
 @given(_pairs(POSITIVE))
 def test_quotients_are_rounded_outward(a: Interval) -> None:
-    _is_around(ON.inverse(a), 1 / Fraction(a[1]), 1 / Fraction(a[0]))
+    on = Arithmetic(DIGITS)
+    _is_around(on.inverse(a), 1 / Fraction(a[1]), 1 / Fraction(a[0]))
     minus = (-a[1], -a[0])
-    _is_around(ON.inverse(minus), -1 / Fraction(a[0]), -1 / Fraction(a[1]))
+    _is_around(on.inverse(minus), -1 / Fraction(a[0]), -1 / Fraction(a[1]))
     ratio = Fraction(a[0]) / Fraction(a[1])
-    _is_around(ON.fraction(ratio), ratio, ratio)
+    _is_around(on.fraction(ratio), ratio, ratio)
 
 
 @COMMON
 @given(_pairs(POSITIVE), _pairs(DECIMALS))
 def test_logarithms_and_exponentials_are_rounded_outward(a: Interval, b: Interval) -> None:
+    on = Arithmetic(DIGITS)
     with mpmath.workdps(60):
-        _is_around(ON.ln(a), *(mpmath.log(mpmath.mpf(str(x))) for x in a))
-        _is_around(ON.exp(b), *(mpmath.exp(mpmath.mpf(str(x))) for x in b))
+        _is_around(on.ln(a), *(mpmath.log(mpmath.mpf(str(x))) for x in a))
+        _is_around(on.exp(b), *(mpmath.exp(mpmath.mpf(str(x))) for x in b))
 
 
 @COMMON
 @given(_pairs(POSITIVE), st.fractions(-12, 12, max_denominator=3))
 def test_powers_hold_the_powers_of_their_ends(a: Interval, exponent: Fraction) -> None:
+    on = Arithmetic(DIGITS)
     with mpmath.workdps(60):
         e = mpmath.mpf(exponent.numerator) / exponent.denominator
         ends = sorted(mpmath.mpf(str(x)) ** e for x in a)
-        low, high = (mpmath.mpf(str(x)) for x in ON.power(a, exponent))
+        low, high = (mpmath.mpf(str(x)) for x in on.power(a, exponent))
         own, spare = mpmath.mpf(10) ** -50, mpmath.mpf(10) ** (4 - DIGITS)
         assert low * (1 - own) <= ends[0] <= low * (1 + spare)
         assert high * (1 - spare) <= ends[1] <= high * (1 + own)
@@ -92,23 +95,36 @@ def test_powers_hold_the_powers_of_their_ends(a: Interval, exponent: Fraction) -
 
 @pytest.mark.parametrize("ends", [("0", "1"), ("-1", "0"), ("-1", "1")])
 def test_what_may_be_a_quotient_by_zero_can_be_anything(ends: tuple[str, str]) -> None:
+    on = Arithmetic(DIGITS)
     interval = (Decimal(ends[0]), Decimal(ends[1]))
-    assert ON.inverse(interval) == EVERYTHING
-    assert ON.power(interval, Fraction(-1)) == EVERYTHING
+    assert on.inverse(interval) == EVERYTHING
+    assert on.power(interval, Fraction(-1)) == EVERYTHING
 
 
 def test_a_logarithm_or_root_of_what_may_be_zero_can_be_anything() -> None:
+    on = Arithmetic(DIGITS)
     for interval in ((Decimal(0), Decimal(1)), (Decimal(-1), Decimal(2))):
-        assert ON.ln(interval) == EVERYTHING
-        assert ON.power(interval, Fraction(1, 2)) == EVERYTHING
+        assert on.ln(interval) == EVERYTHING
+        assert on.power(interval, Fraction(1, 2)) == EVERYTHING
 
 
 def test_what_is_known_of_nothing_stays_unknown() -> None:
     """Infinite ends take part: 0 times anything is anything, and exp of anything is not negative."""
+    on = Arithmetic(DIGITS)
     zero = (Decimal(0), Decimal(0))
-    assert ON.mul(EVERYTHING, zero) == EVERYTHING
-    assert ON.exp(EVERYTHING) == (0, Decimal("Infinity"))
-    assert ON.exp((Decimal("-Infinity"), Decimal("-Infinity")))[1] < Decimal("1e-1000")
+    assert on.mul(EVERYTHING, zero) == EVERYTHING
+    assert on.exp(EVERYTHING) == (0, Decimal("Infinity"))
+    assert on.exp((Decimal("-Infinity"), Decimal("-Infinity")))[1] < Decimal("1e-1000")
+
+
+def test_exponentials_are_held_far_beyond_the_floats() -> None:
+    """10^7 and -10^7, and a power that a logarithm takes back."""
+    on = Arithmetic(DIGITS)
+    with mpmath.workdps(60):
+        for x in (Decimal(10**7), Decimal(-(10**7))):
+            _is_around(on.exp((x, x)), mpmath.exp(int(x)), mpmath.exp(int(x)))
+    low, high = on.ln(on.exp((Decimal(10**12), Decimal(10**12))))
+    assert 10**12 - 20 <= low < 10**12 < high <= 10**12 + 20
 
 
 LN_2, LN_3 = ln_fraction(Fraction(2)), ln_fraction(Fraction(3))

@@ -52,6 +52,7 @@ EQUATIONS = [
     characteristic((1, 1), (1, 2), (1, 3)),
     characteristic((Fraction(1, 2), 1), (Fraction(1, 3), 2)),
     characteristic((10**6, 7), (1, 40)),
+    characteristic((10**200, 7), (1, 40)),
     characteristic((Fraction(1, 10**6), 1), (Fraction(1, 10**6), 3)),
     roots.equation([(ONE, LN_5), (ONE, LN_10_7)]),
     roots.equation([(Fraction(2), LN_2), (Fraction(8, 9), ln_fraction(Fraction(4, 3)))]),

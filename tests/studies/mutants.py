@@ -152,6 +152,8 @@ class Study:
         items = {item.nodeid: item for item in session.items}
         clear = caches("pytest_growthbudget")
         covering = _in_fork(lambda: _covered(list(items.values()), self.sources, clear))
+        for empty in clear:
+            empty()
         gc.freeze()
         for mutant in self.mutants:
             file = str(mutant.path.resolve())
