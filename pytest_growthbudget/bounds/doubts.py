@@ -6,7 +6,7 @@ from fractions import Fraction
 from typing import NoReturn
 
 from pytest_growthbudget.bounds import names
-from pytest_growthbudget.bounds.language import BoundError, Token
+from pytest_growthbudget.bounds.language import SUPERSCRIPTS, BoundError, Token
 from pytest_growthbudget.bounds.tree import Apply, Name, Node, Num, Power
 
 
@@ -29,11 +29,18 @@ class Doubts:
     def fail(self, message: str, start: int, end: int | None = None, hint: str = "") -> NoReturn:
         raise self.fault(message, start, end, hint)
 
+    def _written(self, bare: Apply) -> tuple[str, str]:
+        """A function and its argument without brackets, as they stand in the text: `log^2` and `n`."""
+        argument = bare.arguments[-1]
+        if isinstance(argument, Power) and isinstance(argument.base, Apply) and bare.function == "log_power":
+            argument = argument.base.arguments[-1]
+        return self.text[bare.start : argument.start].rstrip(), self.text[argument.start : argument.end]
+
     def _check_fraction(self, left: Node, sign: Token, right: Node) -> None:
         """Refuses `n^1/2`, where n^(1/2) may be meant; `n^2/2` and `n^2/n` leave no doubt."""
         if not (isinstance(left, Power) and left.end == sign.start and sign.end == right.start):
             return
-        if self.text[left.end - 1] == ")":
+        if self.text[left.end - 1] in ")}" or self.text[left.end - 1] in SUPERSCRIPTS:
             return
         exponent = left.exponent
         if isinstance(right, Num) and isinstance(exponent, Num) and right.value.denominator == 1:
@@ -73,7 +80,7 @@ class Doubts:
         after = self.tokens[self.at + 1] if token.kind == "(" and not close else token
         log_next = after.kind == "name" and names.is_log(after.value)
         if isinstance(last, Apply) and last.bare and not call and not (names.is_log(last.function) and log_next):
-            function = self.text[last.start : last.end].split()[0]
+            function, _ = self._written(last)
             self.fail(
                 f"it is not clear where the argument of {function} ends",
                 last.start,

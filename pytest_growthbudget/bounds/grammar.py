@@ -64,7 +64,8 @@ class Parser(Doubts):
             return self.take()
         if opened is not None and self.token.kind == "end":
             self.fail(f"this {opened.value!r} is never closed", opened.start, opened.end)
-        raise self.fault(f"expected {kind!r} here{self._found()}", self.token.start, self.token.end)
+        expected = "a name" if kind == "name" else repr(kind)
+        raise self.fault(f"expected {expected} here{self._found()}", self.token.start, self.token.end)
 
     def _found(self) -> str:
         return "" if self.token.kind == "end" else f", found {self.token.value!r}"
@@ -146,13 +147,13 @@ class Parser(Doubts):
         return Power(base, exponent, base.start, end, base.recursive or exponent.recursive)
 
     def _ambiguous_argument(self, base: Apply) -> NoReturn:
-        name = self.text[base.start : base.end].split()[0]
-        inner = self.text[base.arguments[-1].start : base.arguments[-1].end]
+        name, inner = self._written(base)
+        short = f"{name}^2 {inner} or " if names.is_log(base.function) and base.function != "log_power" else ""
         self.fail(
             f"this can mean ({self.text[base.start : base.end]})^… or {name}({inner}^…)",
             base.start,
             self.token.end,
-            f"write {name}^2 {inner} or ({name} {inner})^2 for the power, {name}({inner}^2) for the other",
+            f"write {short}({name} {inner})^2 for the power, {name}({inner}^2) for the other",
         )
 
     def exponent(self) -> Node:
@@ -268,7 +269,14 @@ class Parser(Doubts):
     def application(self, function: str, named: Token) -> Node:
         """The power, if any, and the argument of a known function."""
         raised: Node | None = None
-        if self.token.kind in ("^", "power") and names.is_log(function):
+        if self.token.kind in ("^", "power"):
+            if not names.is_log(function):
+                self.fail(
+                    "only a logarithm takes a power before its argument",
+                    named.start,
+                    self.token.end,
+                    f"write {named.value}(…)^2",
+                )
             token = self.take()
             raised = self._superscript(token) if token.kind == "power" else self.exponent()
             if isinstance(raised, Name) or (isinstance(raised, Apply) and raised.bare):

@@ -73,7 +73,7 @@ _SIGNS = {
     "\n": ";", ":=": "=", "==": "=", "=": "=", "<=": "<=", "≤": "<=", ">=": ">=", "≥": ">=", "<": "<", ">": ">",
     ":": ":", "√": "sqrt", "⌈": "⌈", "⌉": "⌉", "⌊": "⌊", "⌋": "⌋", "|": "|",
 }  # fmt: skip
-_SUPERSCRIPTS = dict(zip("⁰¹²³⁴⁵⁶⁷⁸⁹⁻ⁿ", "0123456789-n", strict=True))
+SUPERSCRIPTS = dict(zip("⁰¹²³⁴⁵⁶⁷⁸⁹⁻ⁿ", "0123456789-n", strict=True))
 _SUBSCRIPTS = str.maketrans("₀₁₂₃₄₅₆₇₈₉", "0123456789")
 _TOKEN = re.compile(
     r"(?P<space>[ \t\r\u00a0\u2009]+)"
@@ -112,7 +112,7 @@ def tokenize(text: str) -> list[Token]:
         elif kind == "theta":
             tokens.append(Token("name", "Theta", at, end))
         elif kind == "power":
-            tokens.append(Token("power", "".join(_SUPERSCRIPTS[c] for c in value), at, end))
+            tokens.append(Token("power", "".join(SUPERSCRIPTS[c] for c in value), at, end))
         elif kind == "sign":
             tokens.append(Token(_SIGNS[value], value, at, end))
         at = end

@@ -121,4 +121,5 @@ def check_count(text: str, name: str, token: Token, count: int, end: int) -> Non
     """Raises BoundError where a function has too many or too few arguments."""
     allowed = {"log": (1, 2), "max": (1, 12), "pow": (2, 2)}.get(name, (1, 1))
     if not allowed[0] <= count <= allowed[1]:
-        raise BoundError(f"{token.value} does not take {count} arguments", text, token.start, end)
+        many = "1 argument" if count == 1 else f"{count} arguments"
+        raise BoundError(f"{token.value} does not take {many}", text, token.start, end)
