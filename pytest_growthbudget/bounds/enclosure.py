@@ -58,8 +58,7 @@ class Arithmetic:
         return self.down.next_minus(self.down.ln(a[0])), self.up.next_plus(self.up.ln(a[1]))
 
     def exp(self, a: Interval) -> Interval:
-        low = self.down.exp(a[0]) if a[0].is_finite() else (_ZERO if a[0] < 0 else a[0])
-        high = self.up.exp(a[1]) if a[1].is_finite() else (_ZERO if a[1] < 0 else a[1])
+        low, high = self.down.exp(a[0]), self.up.exp(a[1])
         return max(_ZERO, self.down.next_minus(low)), self.up.next_plus(high)
 
     def fraction(self, x: Fraction) -> Interval:

@@ -137,9 +137,6 @@ class Meaning:
         if function == "exp":
             return v.exp(first)
         if function == "ln":
-            inner = node.arguments[0]
-            if isinstance(inner, RootOf) and inner.unknown == "x":
-                return v.number(self._root(inner))
             return v.ln(first)
         if function == "loglog":
             half = v.times(v.number(symbol(BASE)), v.ln(first))

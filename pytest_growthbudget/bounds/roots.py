@@ -114,10 +114,11 @@ def _polynomial(equation: Equation) -> list[Fraction] | None:
 
 
 def _common_divisor(a: list[Fraction], b: list[Fraction]) -> list[Fraction]:
+    """The greatest common divisor of two polynomials with leading coefficient 1, as is its own."""
     while b:
         rest = list(a)
         while len(rest) >= len(b):
-            factor = rest[-1] / b[-1]
+            factor = rest[-1]
             shift = len(rest) - len(b)
             for i, c in enumerate(b):
                 rest[shift + i] -= factor * c
@@ -242,8 +243,6 @@ def solve(terms: list[tuple[Fraction, Number]]) -> Number:
 def growth_rate(terms: tuple[tuple[Fraction, int], ...]) -> Number:
     """ln ρ for Σ a ρ^(-k) = 1 with integers k > 0 that have no common divisor."""
     eq = Equation(tuple((a, Fraction(k)) for a, k in sorted(terms, key=lambda t: t[1])))
-    if len(eq.terms) == 1:
-        return ln_fraction(eq.terms[0][0]) / eq.terms[0][1]
     degree = max(k for _, k in terms)
     if degree <= 256:
         rate = eq.approximate()

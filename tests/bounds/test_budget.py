@@ -65,6 +65,10 @@ def test_sums_keep_their_written_weights() -> None:
     assert parse_budget("V + E log2(E)").log_growth({"V": 8, "E": 8}) == pytest.approx(math.log(32))
     natural = parse_budget("V + E ln(E)").log_growth({"V": 8, "E": 8})
     assert natural == pytest.approx(math.log(8 + 8 * math.log(8)))
+    both = parse_budget("V + E ln(3) log E").log_growth({"V": 8, "E": 8})
+    assert both == pytest.approx(math.log(8 + 8 * math.log(3) * 3))
+    assert parse_budget("V + E / (1 + log(2))").log_growth({"V": 8, "E": 8}) == pytest.approx(math.log(12))
+    assert math.isfinite(parse_budget("V + 10^310 E").log_growth({"V": 8, "E": 8}))
 
 
 @pytest.mark.parametrize(
