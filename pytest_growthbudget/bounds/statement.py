@@ -99,11 +99,9 @@ def _recurrence(text: str, tokens: list[Token]) -> Recurrence:
     pieces = _clauses(tokens)
     mains: list[tuple[_LeftSide, list[Token]]] = []
     bases: list[tuple[_LeftSide, list[Token]]] = []
-    limited: set[int] = set()
     for i, piece in enumerate(pieces):
         if piece[0].kind == "name" and piece[0].value in ("for", "if", "when"):
             _condition(text, piece[1:])
-            limited.add(i - 1)
             continue
         left = _left(text, piece)
         if left is None:
@@ -280,8 +278,7 @@ def _base_is_zero(text: str, function: str, variable: str, base: tuple[_LeftSide
             left.function.start,
             left.function.end,
         )
-    if piece[4].kind not in ("=", "<="):
-        _check_relation(text, piece[4])
+    _check_relation(text, piece[4])
     start = 5
     while len(piece) > start + 5 and piece[start].value == function and piece[start + 4].kind == "=":
         start += 5

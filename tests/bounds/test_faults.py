@@ -22,7 +22,7 @@ def test_refused_at_the_right_place(entry: dict[str, Any]) -> None:
     with pytest.raises(BoundError) as caught:
         parse_budget(entry["input"])
     fault = caught.value
-    assert (fault.position, fault.end) == (entry["position"], entry["end"])
+    assert (fault.text, fault.position, fault.end) == (entry["input"], entry["position"], entry["end"])
     assert (fault.message, fault.hint) == (entry["message"], entry.get("hint", ""))
 
 

@@ -43,7 +43,7 @@ CONSTANTS: list[Number] = [
 ]
 
 
-@pytest.mark.parametrize("entry", PRINTED, ids=[e["input"] for e in PRINTED])
+@pytest.mark.parametrize("entry", PRINTED, ids=[e["input"][:60] for e in PRINTED])
 def test_a_growth_is_written_in_its_one_form(entry: dict[str, str]) -> None:
     """Simplest spellings of exponents, bases and products; quotients for what falls."""
     theta = parse_budget(entry["input"]).theta
