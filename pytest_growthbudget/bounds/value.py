@@ -271,14 +271,13 @@ def _ln_factor(name: str, f: Factor) -> dict[Monomial, Number]:
 
     def put(coefficient: Number, **parts: Number) -> None:
         if coefficient:
-            key = monomial({name: Factor(**parts)})
-            terms[key] = terms.get(key, ZERO) + coefficient
+            terms[monomial({name: Factor(**parts)})] = coefficient
 
     put(f.factorial, power=ONE, log=ONE)
     put(f.rate - f.factorial, power=ONE)
     put(f.power + f.factorial / 2, log=ONE)
     put(f.log, loglog=ONE)
-    return {m: c for m, c in terms.items() if c}
+    return terms
 
 
 _N_LOG = Factor(power=ONE, log=ONE)

@@ -72,6 +72,28 @@ def test_long_text_is_cut_around_the_place() -> None:
     assert lines[1][lines[2].index("^")] == "?"
 
 
+@pytest.mark.parametrize("length", [1, 70, 71, 72, 73, 74, 75, 80, 150, 900])
+def test_the_marker_stands_under_the_place(length: int) -> None:
+    """At every place of texts that just fit, and of longer ones; what fits is shown whole."""
+    text = "".join(chr(ord("a") + i % 26) for i in range(length))
+    for position in range(length):
+        for end in (position + 1, position + 5, length + 1):
+            _, shown, marker = str(BoundError("no", text, position, end)).splitlines()
+            start = len(marker) - len(marker.lstrip())
+            assert marker.lstrip() == "~" * (len(marker) - start - 1) + "^"
+            assert shown[start] == text[position]
+            assert max(len(shown), len(marker)) <= 80
+            assert shown == f"  {text}" if length <= 72 else shown.strip(" .") in text
+            if length <= 72:
+                assert len(marker) - start == min(end, length) - position
+
+
+def test_a_fault_without_a_place_shows_the_text() -> None:
+    assert str(BoundError("no", "n" * 72)) == "no\n  " + "n" * 72
+    assert str(BoundError("no", "n" * 73, hint="x")) == "no\n  " + "n" * 69 + "...\nhint: x"
+    assert str(BoundError("no", "a\tb\n", 1)) == "no\n  a b \n   ^"
+
+
 HOSTILE = [
     "n" * 10_000, "(" * 5_000, "(" * 400 + "n" + ")" * 400, "-" * 10_000, "+".join("n" * 400), "9**9**9**9",
     "9^9^9^9", "n!" * 400, "log " * 240 + "n", "sqrt(" * 190 + "n", "(n+1)^" * 150 + "2", "n^" * 490 + "n",
@@ -159,6 +181,7 @@ def test_error_travels_between_processes() -> None:
     copy = pickle.loads(pickle.dumps(caught.value))
     assert str(copy) == str(caught.value)
     assert (copy.position, copy.end, copy.hint) == (0, 6, caught.value.hint)
+    assert copy.args == caught.value.args == (caught.value.message,)
 
 
 def test_not_text_is_refused() -> None:
