@@ -132,7 +132,7 @@ def _check_number(text: str, value: str, at: int, end: int) -> None:
 
 def number_value(value: str) -> Fraction:
     """The exact value of a decimal number."""
-    return Fraction(value if value[0] != "." else "0" + value)
+    return Fraction(value)
 
 
 _REASONS = {
