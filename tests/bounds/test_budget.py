@@ -223,3 +223,12 @@ def test_order_is_that_of_compare() -> None:
     assert parse_budget("n").order(parse_budget("n log n")) == "slower"
     with pytest.raises(BoundError):
         parse_budget("V").order(parse_budget("E"))
+
+
+@pytest.mark.parametrize(
+    ("text", "names"),
+    [("5", [["n"]]), ("T(m) = T(m-1)", [["m"]]), ("1 + E / V", [["E"], ["E", "V"]]), ("V + E W", [["V"], ["E", "W"]])],
+)
+def test_every_term_names_a_size(text: str, names: list[list[str]]) -> None:
+    """A constant is one in the first size, or in n."""
+    assert [list(term) for term in parse_budget(text).terms()] == names
