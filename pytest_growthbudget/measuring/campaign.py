@@ -11,7 +11,6 @@ import math
 import random
 from collections.abc import Callable, Generator, Sequence
 from dataclasses import dataclass, field
-from typing import TypeVar
 
 from pytest_growthbudget.measuring.guards import Exhausted, Overrun
 from pytest_growthbudget.measuring.readings import (
@@ -22,12 +21,12 @@ from pytest_growthbudget.measuring.readings import (
     Peeked,
     Reading,
     Request,
+    Result,
     Rounds,
     Series,
+    converse,
 )
 from pytest_growthbudget.workloads import sizes as sizing
-
-Result = TypeVar("Result")
 
 MS = 1e6  # nanoseconds
 #: A body whose cost hardly grows, on a workload that hardly does, would be climbed for ever.
@@ -113,13 +112,7 @@ class Campaign:
     def run(self, rule: Generator[Request, Answer, Result]) -> Result:
         """Answer the requests of `rule` until it returns its finding."""
         self._deadline = self.now() + self.limits.time
-        try:
-            request = next(rule)
-            while True:
-                request = rule.send(self._answer(request))
-        except StopIteration as stop:
-            result: Result = stop.value
-            return result
+        return converse(rule, self._answer)
 
     def _answer(self, request: Request) -> Answer:
         if isinstance(request, Climb):

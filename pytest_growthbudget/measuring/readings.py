@@ -6,8 +6,11 @@ a `Finding`. The campaign answers the requests on a live test; the tests answer 
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Generator
 from dataclasses import dataclass, field
+from typing import TypeVar
+
+Result = TypeVar("Result")
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -102,6 +105,17 @@ class Peeked:
 
 Request = Climb | Rounds | Peek
 Answer = Ladder | Series | Peeked | None
+
+
+def converse(rule: Generator[Request, Answer, Result], answer: Callable[[Request], Answer]) -> Result:
+    """Answers the requests of `rule` until it returns its finding."""
+    try:
+        request = next(rule)
+        while True:
+            request = rule.send(answer(request))
+    except StopIteration as stop:
+        result: Result = stop.value
+        return result
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

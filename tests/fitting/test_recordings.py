@@ -6,8 +6,7 @@ import json
 
 import pytest
 
-from pytest_growthbudget.fitting.rule import decide
-from tests.studies.recordings import DATA, SESSIONS, Replay, run, trials
+from tests.studies.recordings import DATA, SESSIONS, Replay, trials
 from tests.studies.replay import Outcome, plan_of, replay, share
 
 #: Where this rule departs from the first implementation: (earlier, now, why).
@@ -77,10 +76,5 @@ def test_without_a_curve_no_sound_function_is_exceeded() -> None:
 @pytest.mark.parametrize("keep", [6, 8, 11])
 def test_a_ladder_cut_short_raises_no_false_alarm(keep: int) -> None:
     """The same functions with only the first few sizes that can be read, as when time ends the climb."""
-    false = []
-    for trial in trials(SESSIONS[2]):
-        if trial.kind in ("sound", "loose"):
-            replayed = Replay(trial, keep=keep)
-            if run(decide, replayed).verdict == "exceeded":
-                false.append(trial.label)
-    assert false == []
+    sound = [trial for trial in trials(SESSIONS[2]) if trial.kind in ("sound", "loose")]
+    assert [trial.label for trial in sound if Replay(trial, keep=keep).decide().verdict == "exceeded"] == []

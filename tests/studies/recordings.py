@@ -13,6 +13,8 @@ from typing import Any, Final
 import numpy as np
 
 from pytest_growthbudget.fitting.evidence import lower_quartile
+from pytest_growthbudget.fitting.judgement import Finding
+from pytest_growthbudget.fitting.rule import decide
 from pytest_growthbudget.measuring.readings import (
     Answer,
     Climb,
@@ -25,6 +27,7 @@ from pytest_growthbudget.measuring.readings import (
     Request,
     Rounds,
     Series,
+    converse,
 )
 
 DATA: Final = Path(__file__).parent.parent / "data"
@@ -201,12 +204,13 @@ class Replay:
         else:
             self.costs = [lower_quartile(read) for read in recording.sets[0]]
 
-    def promise(self, **more: Any) -> Promise:
-        return Promise(log_growth=GROWTHS[self.trial.budget], curve=self.curve, **more)
-
     def curve(self) -> MemoryCurve | None:
         self.curve_asked = True
         return self.trial.curve if self.with_curve else None
+
+    def decide(self) -> Finding:
+        """The finding on these readings."""
+        return converse(decide(Promise(log_growth=GROWTHS[self.trial.budget], curve=self.curve)), self.answer)
 
     def answer(self, request: Request) -> Answer:
         self.asked.append(request)
@@ -268,14 +272,3 @@ class Replay:
             reading=Reading(size=recording.sizes[index], cost=float(min(two))),
             footprint=recording.footprints[index],
         )
-
-
-def run(rule: Any, replay: Replay, **promise: Any) -> Any:
-    """Drives a rule to its finding on recorded answers."""
-    asking = rule(replay.promise(**promise))
-    try:
-        request = next(asking)
-        while True:
-            request = asking.send(replay.answer(request))
-    except StopIteration as stop:
-        return stop.value

@@ -19,9 +19,8 @@ from typing import Final
 import numpy as np
 
 from pytest_growthbudget.fitting.judgement import Finding
-from pytest_growthbudget.fitting.rule import decide
 from tests.studies.rate import Rate
-from tests.studies.recordings import SESSIONS, Replay, Trial, run, trials
+from tests.studies.recordings import SESSIONS, Replay, Trial, trials
 
 WANTED: Final = {"sound": "within", "loose": "within", "fault": "exceeded", "narrow": "exceeded"}
 Plan = Callable[[float], int]
@@ -55,8 +54,7 @@ def replay(
     for session in sessions:
         for trial in trials(session):
             replayed = Replay(trial, plan=plan, with_curve=with_curve, climb_costs=climb_costs)
-            finding = run(decide, replayed)
-            outcomes.append(Outcome(trial, finding, replayed.nanoseconds / 1e9, replayed.curve_asked))
+            outcomes.append(Outcome(trial, replayed.decide(), replayed.nanoseconds / 1e9, replayed.curve_asked))
     return outcomes
 
 
