@@ -70,7 +70,5 @@ def touched_elements(footprints: Array) -> Array:
 
 
 def _footprint_exponent(sizes: Array, footprints: Array) -> float:
-    if len(sizes) < 2:
-        return _FOOTPRINT_EXPONENTS[0]
     slope = np.log(footprints[-1] / footprints[0]) / np.log(sizes[-1] / sizes[0])
     return float(np.clip(slope, *_FOOTPRINT_EXPONENTS))

@@ -11,7 +11,6 @@ from pytest_growthbudget.measuring.readings import Ladder
 
 UNCONFIRMED: Final = "one set of readings is above the slack, and a second set did not agree"
 SUSPICIOUS: Final = "the excess is small, but too surely above zero for the budget to be called kept"
-AHEAD: Final = "the sizes read keep the budget, but one much larger size costs more than they foretell"
 NO_CURVE: Final = (
     "the cost is above the slack, but how much of that is the memory of this machine is not known, "
     "so it cannot be called exceeded"

@@ -108,7 +108,6 @@ class _Clock:
         if not is_within(evidence.plain, evidence.gamma, limits):
             return None
         if is_suspicious(evidence.plain, evidence.gamma, limits.suspect, limits):
-            self.doubt = reasons.SUSPICIOUS
             return None
         ahead = yield from self.looks_ahead()
         if ahead <= limits.look_ahead:
@@ -133,7 +132,6 @@ class _Clock:
         if found is not None or self.doubt:
             return found
         if self.ahead and (yield from self.can_go_on()):
-            self.doubt = reasons.AHEAD
             return None
         return (yield from self.believed_within())
 

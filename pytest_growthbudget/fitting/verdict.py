@@ -6,6 +6,7 @@ more than the slack, and that it is less than a larger limit. Where neither can 
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass, replace
 from enum import Enum
@@ -44,21 +45,21 @@ class Limits:
     the lower bounds above which a fit that would be within is not believed at stage A, at stage B, and when there
     is no stage to come. `look_ahead`: the excess tolerated at one larger size, and `look_on` the one above which
     dearer sizes are read all the same. `resident`: the lower bound on cache-resident sizes above which a deflated fit
-    is not believed.
+    is not believed. Those that are left out bound nothing.
     """
 
     confidence: float
     exceeded: float
-    exceeded_top: float
+    exceeded_top: float = math.inf
     exceeded_flat: float
     within: float
     within_hidden: float
-    suspect: float
-    suspect_later: float
-    suspect_last: float
-    look_ahead: float
-    look_on: float
-    resident: float
+    suspect: float = math.inf
+    suspect_later: float = math.inf
+    suspect_last: float = math.inf
+    look_ahead: float = math.inf
+    look_on: float = math.inf
+    resident: float = math.inf
 
     @property
     def lower(self) -> float:
@@ -92,20 +93,12 @@ def clock_limits(slack: float = CLOCK_SLACK, confidence: float = 0.95) -> Limits
 
 def count_limits(slack: float, confidence: float = 0.95) -> Limits:
     """The limits for a deterministic meter. Nothing is suspected of counts, and no stage looks further."""
-    nowhere = float("inf")
     return Limits(
         confidence=confidence,
         exceeded=slack,
-        exceeded_top=nowhere,
         exceeded_flat=slack,
         within=slack + 0.05,
         within_hidden=slack + 0.05,
-        suspect=nowhere,
-        suspect_later=nowhere,
-        suspect_last=nowhere,
-        look_ahead=nowhere,
-        look_on=nowhere,
-        resident=nowhere,
     )
 
 
@@ -221,9 +214,10 @@ def exceeds_uncurved(evidence: Evidence, limit: float, limits: Limits) -> Says:
     most = limit + 1.5 * UTMOST_INFLATION / span
     if is_exceeded(evidence.plain, evidence.plain, evidence.gamma, most, limits) and rises_enough(evidence.seen):
         return Says.YES
-    small = evidence.up_to(SMALL_FOOTPRINT) if evidence.footprints[0] > 0 else evidence.window(0, 0)
+    small = evidence.up_to(SMALL_FOOTPRINT)
     if (
         len(small) >= SMALL_SIZES
+        and small.footprint > 0
         and is_exceeded(small.plain, small.plain, small.gamma, limit, limits)
         and rises_enough(small.seen)
     ):

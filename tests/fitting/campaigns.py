@@ -23,6 +23,7 @@ from pytest_growthbudget.measuring.readings import (
     Request,
     Rounds,
     Series,
+    converse,
 )
 
 HALF_OCTAVES = tuple(int(50 * 2 ** (step / 2)) for step in range(48))
@@ -32,7 +33,8 @@ HALF_OCTAVES = tuple(int(50 * 2 ** (step / 2)) for step in range(48))
 class Formula:
     """Answers a rule's requests for a body of `cost(n)` nanoseconds.
 
-    `noise`: standard deviation of log cost. `second`: the cost in the second set, where it differs. `most`: how many
+    `noise`: standard deviation of log cost. `second`: the cost in the second set, where it differs; `climbing`: that
+    of the climb's own calls. `most`: how many
     sizes the ladder may have before it ends for the reason `ended`. `rounds`: how many requests for rounds are
     answered before time runs out; the next is answered with `partial` readings a size, and those after with none.
     """
@@ -42,6 +44,7 @@ class Formula:
     sizes: tuple[int, ...] = HALF_OCTAVES
     noise: float = 0.01
     second: Callable[[float], float] | None = None
+    climbing: Callable[[float], float] | None = None
     most: int = 48
     ended: str = "largest"
     rounds: int = 99
@@ -55,8 +58,7 @@ class Formula:
     def __post_init__(self) -> None:
         self.draw = np.random.default_rng(5)
 
-    def read(self, size: int, repeat: int = 0) -> float:
-        cost = self.second if repeat and self.second else self.cost
+    def read(self, size: int, cost: Callable[[float], float]) -> float:
         return cost(size) * math.exp(self.draw.normal(0, self.noise)) if self.noise else float(cost(size))
 
     def ask_curve(self) -> MemoryCurve | None:
@@ -83,7 +85,7 @@ class Formula:
         sizes = self.sizes[: self.climbed]
         return Ladder(
             sizes=sizes,
-            costs=tuple(self.read(size) for size in sizes),
+            costs=tuple(self.read(size, self.climbing or self.cost) for size in sizes),
             footprints=tuple(self.bytes_each * size for size in sizes),
             ended=self.ended if self.climbed == most else "",
             readable=min(self.first(), self.climbed),
@@ -104,7 +106,8 @@ class Formula:
         if self.rounds < 0:
             calls = self.partial if self.rounds == -1 else 0
         sizes = self.sizes[request.first : request.last] if calls else ()
-        costs = tuple(tuple(self.read(size, request.repeat) for _ in range(calls)) for size in sizes)
+        cost = self.second if request.repeat and self.second else self.cost
+        costs = tuple(tuple(self.read(size, cost) for _ in range(calls)) for size in sizes)
         return Series(sizes=sizes, costs=costs, complete=self.rounds >= 0)
 
     def look(self, request: Peek) -> Peeked | None:
@@ -115,19 +118,12 @@ class Formula:
         ]
         if not fits or fits[-1] < request.beyond * self.sizes[request.last - 1]:
             return None
-        reading = Reading(size=fits[-1], cost=self.read(fits[-1]))
+        reading = Reading(size=fits[-1], cost=self.read(fits[-1], self.cost))
         return Peeked(reading=reading, footprint=self.bytes_each * fits[-1])
 
     def decide(self, log_growth: Callable[[float], float], **promise: Any) -> Finding:
         """The finding on this body held to a growth."""
-        asking = decide(Promise(log_growth=log_growth, curve=self.ask_curve, **promise))
-        try:
-            request = next(asking)
-            while True:
-                request = asking.send(self.answer(request))
-        except StopIteration as stop:
-            finding: Finding = stop.value
-            return finding
+        return converse(decide(Promise(log_growth=log_growth, curve=self.ask_curve, **promise)), self.answer)
 
     def of(self, kind: type) -> list[Any]:
         """The requests of one kind, in order."""
@@ -142,3 +138,18 @@ BUDGETS: Mapping[str, Callable[[float], float]] = {
     "n log n": lambda n: math.log(n) + math.log(math.log(n)),
     "n^2": lambda n: 2 * math.log(n),
 }
+
+FLAT_CURVE = MemoryCurve(
+    log_bytes=(math.log(2**17), math.log(2**26)),
+    log_inflation=(0.0, 0.01),
+    extra=(0.0, 0.1),
+    resident=2.0**26,
+    cheapest=3.0,
+)
+STEEP_CURVE = MemoryCurve(
+    log_bytes=tuple(math.log(2.0**power) for power in (17, 20, 22, 24, 26)),
+    log_inflation=tuple(map(math.log, (1.0, 1.2, 3.0, 6.0, 8.0))),
+    extra=(0.0, 5.0, 60.0, 150.0, 200.0),
+    resident=2.0**20,
+    cheapest=3.0,
+)

@@ -11,7 +11,7 @@ import pytest
 from pytest_growthbudget.fitting import reasons
 from pytest_growthbudget.fitting.judgement import Finding
 from pytest_growthbudget.fitting.rule import decide
-from pytest_growthbudget.measuring.readings import Answer, Climb, Ladder, Promise, Request, Rounds, Series
+from pytest_growthbudget.measuring.readings import Answer, Climb, Ladder, Promise, Request, Rounds, Series, converse
 from tests.studies.recordings import DATA, GROWTHS
 
 #: Executed lines and comparisons by size, three workloads each; the lower-order terms of these are still large.
@@ -35,13 +35,7 @@ def answers(sizes: tuple[int, ...], workloads: Callable[[int], list[list[float]]
 def decided(sizes, workloads, growth, slack: float = 0.05) -> tuple[Finding, list[Request]]:  # type: ignore[no-untyped-def]
     asked: list[Request] = []
     answer = answers(tuple(sizes), workloads, asked)
-    asking = decide(Promise(log_growth=growth, slack=slack, deterministic=True))
-    try:
-        request = next(asking)
-        while True:
-            request = asking.send(answer(request))
-    except StopIteration as stop:
-        return stop.value, asked
+    return converse(decide(Promise(log_growth=growth, slack=slack, deterministic=True)), answer), asked
 
 
 def counts_of(cost: Callable[[float], float]) -> Callable[[int], list[list[float]]]:

@@ -8,23 +8,8 @@ from dataclasses import asdict
 import pytest
 
 from pytest_growthbudget.fitting import reasons
-from pytest_growthbudget.measuring.readings import Climb, MemoryCurve, Peek, Rounds
-from tests.fitting.campaigns import BUDGETS, Formula
-
-FLAT_CURVE = MemoryCurve(
-    log_bytes=(math.log(2**17), math.log(2**26)),
-    log_inflation=(0.0, 0.01),
-    extra=(0.0, 0.1),
-    resident=2.0**26,
-    cheapest=3.0,
-)
-STEEP_CURVE = MemoryCurve(
-    log_bytes=tuple(math.log(2.0**power) for power in (17, 20, 22, 24, 26)),
-    log_inflation=tuple(map(math.log, (1.0, 1.2, 3.0, 6.0, 8.0))),
-    extra=(0.0, 5.0, 60.0, 150.0, 200.0),
-    resident=2.0**20,
-    cheapest=3.0,
-)
+from pytest_growthbudget.measuring.readings import Climb, Peek, Rounds
+from tests.fitting.campaigns import BUDGETS, FLAT_CURVE, STEEP_CURVE, Formula
 
 KEPT = [
     ("1", lambda n: 5e4),
