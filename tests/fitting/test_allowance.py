@@ -78,6 +78,22 @@ def test_a_square_over_a_line_of_memory_may_touch_each_element_n_times() -> None
     assert square[-1] > math.log(6)
 
 
+def test_memory_that_grows_as_the_budget_is_touched_once() -> None:
+    """A square over a square of memory: the elements are n², each visited once, as in the line over a line."""
+    start = 64.0 * np.array(SIZES[:1], dtype=float)
+    squares = start * (np.array(SIZES) / SIZES[0]) ** 2
+    square = addition(CURVE, seen(lambda n: 100.0 * n * n, 2.0), squares, squares)
+    share = 2 * 50 * squares[-1] / 64 / (100.0 * SIZES[-1] ** 2)
+    assert square[-1] == pytest.approx(-math.log(1 - share))
+
+
+def test_a_flat_budget_may_touch_each_element_once() -> None:
+    footprints = bytes_each(64.0)
+    flat = addition(CURVE, seen(lambda n: 1000.0 * n, 0.0), footprints, footprints)
+    line = addition(CURVE, seen(lambda n: 1000.0 * n), footprints, footprints)
+    assert flat.tolist() == pytest.approx(line.tolist())
+
+
 def test_the_allowance_is_the_smaller_and_never_falls() -> None:
     case = seen(lambda n: 100.0 * n)
     footprints = bytes_each(100.0)

@@ -19,23 +19,30 @@ COUNTED = json.loads((DATA / "counts.json").read_text(encoding="ascii"))
 SIZES = tuple(int(100 * 2 ** (step / 2)) for step in range(12))
 
 
-def answers(sizes: tuple[int, ...], workloads: Callable[[int], list[list[float]]], asked: list[Request]):  # type: ignore[no-untyped-def]
+def answers(  # type: ignore[no-untyped-def]
+    sizes: tuple[int, ...], workloads: Callable[[int], list[list[float]]], asked: list[Request], first: int | None
+):
+    """Answers by `workloads(repeat)`, each a list of counts by size; the first set has `first` sizes only."""
+
     def answer(request: Request) -> Answer:
         asked.append(request)
         if isinstance(request, Climb):
-            first = tuple(float(cost) for cost in workloads(0)[0])
-            return Ladder(sizes=sizes, costs=first, footprints=(0.0,) * len(sizes), ended="largest")
+            climbed = tuple(float(cost) for cost in workloads(0)[0])
+            return Ladder(sizes=sizes, costs=climbed, footprints=(0.0,) * len(sizes), ended="largest")
         assert isinstance(request, Rounds)
-        by_size = zip(*workloads(request.repeat), strict=True)
-        return Series(sizes=sizes, costs=tuple(tuple(map(float, costs)) for costs in by_size))
+        by_size = tuple(tuple(map(float, costs)) for costs in zip(*workloads(request.repeat), strict=True))
+        by_size = by_size if request.repeat else by_size[:first]
+        return Series(sizes=sizes[: len(by_size)], costs=by_size, complete=len(by_size) == len(sizes))
 
     return answer
 
 
-def decided(sizes, workloads, growth, slack: float = 0.05) -> tuple[Finding, list[Request]]:  # type: ignore[no-untyped-def]
+def decided(  # type: ignore[no-untyped-def]
+    sizes, workloads, growth, slack: float = 0.05, confidence: float = 0.95, first: int | None = None
+) -> tuple[Finding, list[Request]]:
     asked: list[Request] = []
-    answer = answers(tuple(sizes), workloads, asked)
-    return converse(decide(Promise(log_growth=growth, slack=slack, deterministic=True)), answer), asked
+    promise = Promise(log_growth=growth, slack=slack, confidence=confidence, deterministic=True)
+    return converse(decide(promise), answers(tuple(sizes), workloads, asked, first)), asked
 
 
 def counts_of(cost: Callable[[float], float]) -> Callable[[int], list[list[float]]]:
@@ -137,3 +144,80 @@ def test_undecided_counts_are_read_again_and_put_together() -> None:
     assert [request.repeat for request in asked if isinstance(request, Rounds)] == [0, 1]
     assert found.verdict in ("within", "undecided")
     assert {row.readings for row in found.sizes} == {12}
+
+
+def test_reasons_are_whole_sentences() -> None:
+    """What is said of counts, by verdict."""
+    within, _ = decided(SIZES, counts_of(lambda n: n), GROWTHS["n"])
+    assert within.reason == "over n = 100 to 4525 the excess is below the limit of 0.10"
+    exceeded, _ = decided(SIZES, counts_of(lambda n: n * n), GROWTHS["n"])
+    assert exceeded.reason == (
+        "over n = 100 to 4525 the excess is at least 1.00, above the slack of 0.05, and a second set of readings agrees"
+    )
+    wild = [0.5, 1.6, 1.0, 1.9, 0.6, 1.1, 1.0, 1.8, 0.5, 1.2, 0.9, 1.0]
+    undecided, _ = decided(
+        SIZES, lambda repeat: [[round(n * f) for n, f in zip(SIZES, wild, strict=True)]], GROWTHS["n"]
+    )
+    assert (undecided.verdict, undecided.confirmed) == ("undecided", None)
+    assert undecided.reason == (
+        "over n = 100 to 4525 the excess lies between -0.66 and 1.16: neither surely above 0.05 nor surely below 0.10"
+    )
+    assert [row.size for row in undecided.sizes] == list(SIZES)
+
+
+def test_what_hides_behind_the_budgets_own_count_is_not_within() -> None:
+    """A square behind a line: four fifths of the largest count are linear still."""
+    found, _ = decided(SIZES, counts_of(lambda n: 100 * n + n * n / 200), GROWTHS["n"])
+    assert found.verdict == "undecided"
+
+
+def test_the_confidence_asked_for_holds_for_counts() -> None:
+    wild = [0.9, 1.1, 1.0, 1.2, 0.9, 1.1, 1.0, 1.1, 0.9, 1.2, 0.9, 1.0]
+
+    def width(confidence: float) -> float:
+        counts = [[round(n * f) for n, f in zip(SIZES, wild, strict=True)]]
+        found, _ = decided(SIZES, lambda repeat: counts, GROWTHS["n"], confidence=confidence)
+        assert found.excess is not None
+        return found.excess.high - found.excess.low
+
+    assert width(0.99) > 1.2 * width(0.95)
+
+
+def test_five_sizes_are_enough() -> None:
+    found, _ = decided(SIZES[:5], lambda repeat: [[n * n for n in SIZES[:5]]], GROWTHS["n"])
+    assert (found.verdict, found.confirmed) == ("exceeded", True)
+
+
+def test_nothing_counted_is_told_from_too_few_sizes() -> None:
+    five, _ = decided(SIZES[:5], lambda repeat: [[0] * 5], GROWTHS["n"])
+    assert five.reason == reasons.NOTHING_COUNTED
+    four, _ = decided(SIZES[:4], lambda repeat: [[0] * 4], GROWTHS["n"])
+    assert four.reason.startswith("no size could be read where 5 are needed")
+
+
+@pytest.mark.parametrize("read", [0, 4])
+def test_where_time_left_no_second_set_the_climbs_own_counts_must_agree(read: int) -> None:
+    def workloads(repeat: int) -> list[list[float]]:
+        return [[n * n for n in SIZES][: read if repeat else None]]
+
+    found, _ = decided(SIZES, workloads, GROWTHS["n"])
+    assert (found.verdict, found.confirmed) == ("exceeded", True)
+
+
+def test_where_time_left_no_first_set_it_is_unmeasured() -> None:
+    def workloads(repeat: int) -> list[list[float]]:
+        return [[n * n for n in SIZES]]
+
+    for read, said in ((0, "no size"), (3, "only 3 sizes")):
+        found, _ = decided(SIZES, workloads, GROWTHS["n"], first=read)
+        assert found.verdict == "unmeasured"
+        assert found.reason.startswith(f"{said} could be read where 5 are needed")
+        assert len(found.sizes) == read
+
+
+def test_sizes_with_a_count_of_zero_stay_in_the_report() -> None:
+    """All counts are taken one higher, so that the first ones have a log."""
+    found, _ = decided(SIZES, lambda repeat: [[max(0, n - 1500) for n in SIZES]], GROWTHS["1"])
+    assert [(row.size, row.cost) for row in found.sizes] == [(n, max(0, n - 1500) + 1) for n in SIZES]
+    ones, _ = decided(SIZES, lambda repeat: [[1] * len(SIZES)], GROWTHS["1"])
+    assert {row.cost for row in ones.sizes} == {1}

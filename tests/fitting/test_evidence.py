@@ -69,7 +69,10 @@ def test_a_window_has_its_part_of_the_whole_allowance() -> None:
     assert whole.allowed is not None
     assert whole.last(4).allowed is not None
     assert whole.last(4).allowed.tolist() == whole.allowed[-4:].tolist()
-    assert whole.up_to(64.0 * 2**14).seen.sizes[-1] == 2**14
+    assert (whole.last(4).seen.sizes.tolist(), whole.last(4).counts) == (list(sizes[-4:]), (1,) * 4)
+    assert whole.last(99).seen.sizes.tolist() == list(sizes)
+    assert whole.last(4).footprint == 64.0 * sizes[-1]
+    assert whole.up_to(64.0 * 2**14).seen.sizes.tolist() == list(sizes[:5])
     assert len(whole.up_to(1.0)) == 0
 
 
@@ -86,4 +89,11 @@ def test_unknown_footprints_have_no_allowance() -> None:
     sizes = tuple(2**k for k in range(10, 20))
     found = gathered(Series(sizes=sizes, costs=tuple((20.0 * n,) for n in sizes)))
     assert found.allowed is None
+    assert found.last(6).allowed is None
     assert found.deflated is None
+
+
+def test_a_footprint_known_from_some_size_on_is_unknown_below() -> None:
+    found = gathered(Series(sizes=(5, 10), costs=((1.0,), (2.0,))), touched={10: 200.0})
+    assert found.footprints.tolist() == [0.0, 200.0]
+    assert found.allowed is None

@@ -158,6 +158,9 @@ def test_exponential_budgets() -> None:
         assert found.exponent is None
         return found.verdict
 
+    assert Formula(lambda n: 60.0 * 3.0**n, sizes=sizes).decide(
+        lambda n: n * math.log(2), exponential=True
+    ).excess.estimate == pytest.approx(math.log(3) / math.log(2) - 1, abs=0.01)
     assert held(2.0, 2.0) == "within"
     assert held(1.6, 2.0) == "within"
     assert held(2.0, 1.5) == "exceeded"
@@ -199,9 +202,12 @@ def test_a_body_that_is_dear_from_the_start_is_climbed_as_far_as_time_allows() -
 
 
 def test_a_body_too_fast_for_the_clock_is_told_so() -> None:
-    case = Formula(lambda n: 300.0, most=20, readable=20)
-    found = case.decide(BUDGETS["1"])
-    assert (found.verdict, found.reason) == ("unmeasured", reasons.TOO_FAST)
+    for ended in ("", "largest", "memory"):
+        case = Formula(lambda n: 300.0, most=5, readable=1, ended=ended)
+        found = case.decide(BUDGETS["1"])
+        assert (found.verdict, found.reason) == ("unmeasured", reasons.TOO_FAST)
+    few = Formula(lambda n: 300.0, most=4, readable=1, ended="largest").decide(BUDGETS["1"])
+    assert few.reason.startswith("only 3 sizes could be read where 5 are needed")
 
 
 def test_no_size_at_all() -> None:

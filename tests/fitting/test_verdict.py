@@ -71,10 +71,23 @@ def test_a_smaller_slack_leaves_the_suspicions() -> None:
     )
 
 
+def test_a_fit_is_suspected_before_it_is_exceeded_and_the_more_surely_the_later() -> None:
+    limits = clock_limits()
+    assert 0 < limits.suspect < limits.resident <= limits.suspect_later < limits.suspect_last < limits.exceeded
+    assert limits.exceeded < limits.exceeded_top < limits.within == limits.look_ahead < limits.within_hidden < 1
+
+
+def test_the_bounds_are_those_of_the_central_interval() -> None:
+    limits = clock_limits(confidence=0.9)
+    assert (limits.lower, limits.upper) == (pytest.approx(0.05), pytest.approx(0.95))
+
+
 def test_counts_and_given_costs_have_their_own_limits() -> None:
     assert count_limits(0.05).within == pytest.approx(0.10)
+    assert count_limits(0.05).within_hidden == pytest.approx(0.10)
+    assert (given_limits(0.05).within, given_limits(0.05).within_hidden) == (pytest.approx(0.10), pytest.approx(0.15))
+    assert (given_limits(0.05).exceeded_flat, given_limits(0.15).exceeded_flat) == (0.05, 0.20)
     assert given_limits(0.15) == clock_limits(0.15)
-    assert given_limits(0.05).within == pytest.approx(0.10)
     assert given_limits(0.0).within == 0.0
 
 
@@ -87,8 +100,9 @@ def test_an_excess_is_shown_and_none_is_not() -> None:
 
 
 def test_an_excess_in_what_is_a_trifle_at_the_largest_size_is_not_shown() -> None:
-    """A square that makes up a thousandth of the cost: surely a square, but not what the body costs."""
-    case = evidence(lambda n: 4e6 + 4e6 * 0.001 * (n / SIZES[-1]) ** 2)
+    """A square that makes up a third of the cost: surely a square, but not what the body costs."""
+    case = evidence(lambda n: 65e5 + 35e5 * (n / SIZES[-1]) ** 2)
+    assert is_suspicious(case.plain, 1.0, 0.15, LIMITS)
     assert not is_exceeded(case.plain, case.plain, 1.0, 0.15, LIMITS)
 
 
@@ -144,13 +158,49 @@ def test_unknown_footprints_are_like_no_curve() -> None:
 
 
 def test_a_body_cheaper_than_the_kernels_is_judged_on_resident_sizes() -> None:
-    def cost(n: float) -> float:
+    """What it costs outside the caches no kernel can tell, what it costs inside them is its own."""
+
+    def leaves_the_cache(n: float) -> float:
         return 0.5 * n * (1 if n < 1000 else (n / 1000) ** 0.8)
 
-    case = evidence(cost, bytes_each=2.0**10, curve=STEEP)
+    def square(n: float) -> float:
+        return 0.5 * n * (n / SIZES[0])
+
+    case = evidence(leaves_the_cache, bytes_each=2.0**10, curve=STEEP)
     assert is_cheap(case, STEEP)
     assert says(case, STEEP) is Says.NO
     assert not is_cheap(case, replace(STEEP, cheapest=0.1))
+    assert not is_cheap(evidence(leaves_the_cache, 0.5, bytes_each=2.0**10, curve=STEEP), STEEP)
+    excess = evidence(square, bytes_each=2.0**10, curve=STEEP)
+    assert is_cheap(excess, STEEP)
+    assert says(excess, STEEP) is Says.YES
+
+
+@pytest.mark.parametrize(("resident", "said"), [(6, Says.NO), (7, Says.YES)])
+def test_seven_resident_sizes_of_a_cheap_body_suffice(resident: int, said: Says) -> None:
+    curve = replace(STEEP, resident=1e4 * SIZES[resident - 1])
+    assert says(evidence(lambda n: 0.1 * n**2, bytes_each=1e4, curve=curve), curve) is said
+
+
+@pytest.mark.parametrize(("small", "said"), [(6, Says.NOT_WITHOUT_CURVE), (7, Says.YES)])
+def test_without_a_curve_seven_small_sizes_suffice(small: int, said: Says) -> None:
+    """They keep to 256 KiB, and have run ahead threefold."""
+    each = 256 * 1024.0 / SIZES[small - 1]
+    assert says(evidence(lambda n: 30 * n**1.6, bytes_each=each), None) is said
+
+
+@pytest.mark.parametrize(
+    ("steeper", "said"), [(0.55, Says.NOT_WITHOUT_CURVE), (0.75, Says.NOT_WITHOUT_CURVE), (1.0, Says.YES)]
+)
+def test_without_a_curve_the_excess_must_be_more_than_memory_was_ever_seen_to_make(steeper: float, said: Says) -> None:
+    """Twentyfold over 17 half octaves is a slope of 0.51, and 0.76 where it comes as one step in the middle."""
+    assert says(evidence(lambda n: 30 * n ** (1 + steeper), bytes_each=1e6), None) is said
+
+
+def test_a_flat_budget_is_exceeded_by_what_the_cost_does_at_the_largest_size() -> None:
+    slight, plain = evidence(lambda n: n**0.18, 0.0), evidence(lambda n: n**0.25, 0.0)
+    assert not is_exceeded(slight.plain, slight.plain, 0.0, 0.15, LIMITS)
+    assert is_exceeded(plain.plain, plain.plain, 0.0, 0.15, LIMITS)
 
 
 @pytest.mark.parametrize("count", [5, 6, 7, 8])
