@@ -168,8 +168,6 @@ class Campaign:
         if limits.largest is not None and size >= limits.largest:
             size = limits.largest
             self._ended = "largest"
-            if self._rungs and self._rungs[-1].size >= size:
-                return
         if not self._affordable(size):
             return
         self._add(size)
@@ -251,7 +249,7 @@ class Campaign:
     def _refine(self) -> None:
         """Fill the ladder in where half octaves give fewer than 12 sizes up to a dear call."""
         self._refined = True
-        if self.limits.exponential or self._ended == "runaway":
+        if self._ended == "runaway":
             return
         usable = [rung for rung in self._rungs if rung.cost * rung.calls >= self.limits.floor]
         if len(usable) < 2:
