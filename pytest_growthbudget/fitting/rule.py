@@ -224,7 +224,7 @@ class _Clock:
         if peeked is None:
             return 0.0
         joined = run.joined(evidence, peeked)
-        before = slice(max(0, len(evidence) - AHEAD_SIZES), len(evidence))
+        before = slice(-1 - AHEAD_SIZES, -1)
         height = np.log(joined.seen.costs) - joined.seen.log_growth
         rise = float(height[-1] - height[before].mean())
         distance = float(joined.seen.regressor[-1] - joined.seen.regressor[before].mean())

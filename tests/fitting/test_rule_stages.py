@@ -101,6 +101,12 @@ def test_an_excess_in_the_last_ten_sizes_alone_is_found_and_said_of_them() -> No
     assert found.reason.startswith(f"over n = {found.sizes[-10].size} to {found.sizes[-1].size} the excess is at least")
 
 
+def test_stage_a_judges_no_sizes_alone() -> None:
+    """Ten of its cheap sizes may be a single step; the same body is exceeded with those of stage B."""
+    found = Formula(bending(3e3), bytes_each=1.0).decide(BUDGETS["n"])
+    assert (found.verdict, found.stage) == ("exceeded", "B")
+
+
 def test_outside_the_caches_the_last_sizes_are_not_judged_alone() -> None:
     """The edge of a cache among ten sizes tilts them all."""
     found = Formula(bending(2e4), bytes_each=24.0, curve=FLAT_CURVE).decide(BUDGETS["n"])
@@ -121,6 +127,17 @@ def test_the_look_ahead_tolerates_growth_up_to_the_limit(exponent: float, stage:
 
     found = Formula(cost, noise=0.001, bytes_each=1.0).decide(BUDGETS["n"])
     assert (found.verdict, found.stage) == ("within" if stage == "A" else "exceeded", stage)
+
+
+def test_what_the_look_ahead_saw_is_not_forgotten_at_stage_b() -> None:
+    """All sizes up to 32 ms taken together would pass."""
+
+    def cost(n: float) -> float:
+        return 100.0 * n * max(1.0, n / 6e4) ** 0.8
+
+    case = Formula(cost, noise=0.001, bytes_each=24.0, curve=FLAT_CURVE)
+    found = case.decide(BUDGETS["n"])
+    assert (found.verdict, found.stage) == ("undecided", "C")
 
 
 def scattered(n: float) -> float:

@@ -9,7 +9,7 @@ import time
 
 import pytest
 
-from pytest_growthbudget.measuring.guards import Overrun, Watch
+from pytest_growthbudget.measuring.guards import REPEAT, Overrun, Watch
 
 needs_timer = pytest.mark.skipif(not hasattr(signal, "setitimer"), reason="this platform has no interval timer")
 
@@ -61,6 +61,98 @@ def test_the_allowance_can_be_extended() -> None:
         watch.extend(60)
         watch.guard()
         time.sleep(0.1)
+
+
+@needs_timer
+def test_one_call_may_be_allowed_less_than_the_whole() -> None:
+    """What a call leaves of its share goes back to the whole."""
+    watch = Watch(6000)
+    with watch.start():
+        watch.allow(3000e9)
+        for _ in range(3):
+            watch.guard()
+            assert 2000 < signal.getitimer(signal.ITIMER_REAL)[0] <= 3000
+            watch.release()
+            assert 5000 < signal.getitimer(signal.ITIMER_REAL)[0] <= 6000
+        watch.allow(9000e9)
+        watch.guard()
+        assert 5000 < signal.getitimer(signal.ITIMER_REAL)[0] <= 6000
+        watch.release()
+        assert 5000 < signal.getitimer(signal.ITIMER_REAL)[0] <= 6000
+
+
+@needs_timer
+def test_a_call_is_interrupted_after_its_own_share() -> None:
+    watch = Watch(6000)
+    with watch.start():
+        watch.allow(1e7)
+        watch.guard()
+        with pytest.raises(Overrun):
+            forever()
+        watch.release()
+        assert 5000 < signal.getitimer(signal.ITIMER_REAL)[0] < 6001
+
+
+@needs_timer
+def test_a_share_of_nothing_still_interrupts() -> None:
+    """A timer set to zero would never go off."""
+    watch = Watch(6000)
+    with watch.start():
+        watch.allow(0)
+        watch.guard()
+        with pytest.raises(Overrun):
+            forever()
+
+
+@needs_timer
+def test_the_extension_is_added_to_what_is_left() -> None:
+    watch = Watch(2000)
+    with watch.start():
+        watch.extend(3000)
+        left, repeat = signal.getitimer(signal.ITIMER_REAL)
+        assert 4000 < left <= 5000
+        assert repeat == pytest.approx(REPEAT, rel=0.1)
+
+
+@needs_timer
+def test_an_alarm_that_came_outside_the_guard_comes_again() -> None:
+    watch = Watch(0.001)
+    with watch.start():
+        time.sleep(0.01)
+        watch.guard()
+        with pytest.raises(Overrun):
+            forever()
+
+
+@needs_timer
+def test_a_watch_that_stands_back_interrupts_nothing_any_more() -> None:
+    watch = Watch(0.05)
+    with watch.start():
+        watch.guard()
+        watch.stand_back()
+        assert not watch.usable
+        assert signal.getitimer(signal.ITIMER_REAL) == (0.0, 0.0)
+        watch.guard()
+        watch.extend(0.01)
+        time.sleep(0.1)
+
+
+@needs_timer
+def test_a_handler_of_someone_else_is_left_alone() -> None:
+    def theirs(number: int, frame: object) -> None:
+        pass
+
+    signal.signal(signal.SIGALRM, theirs)
+    try:
+        watch = Watch(0.01)
+        with watch.start():
+            watch.allow(1e6)
+            watch.guard()
+            watch.release()
+        assert not watch.usable
+        assert signal.getsignal(signal.SIGALRM) is theirs
+    finally:
+        signal.signal(signal.SIGALRM, signal.SIG_DFL)
 
 
 @needs_timer

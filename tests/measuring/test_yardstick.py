@@ -31,3 +31,32 @@ def test_few_readings() -> None:
     assert growth.log_value({"n": 10}) == 0.0
     growth.add(10, math.e)
     assert growth.log_value({"n": 1000}) == pytest.approx(1.0)
+
+
+def test_between_two_readings_it_is_interpolated_between_those_two() -> None:
+    growth = YardstickGrowth()
+    for size, cost in ((10, 1.0), (20, 4.0), (40, 5.0), (80, 50.0)):
+        growth.add(size, cost)
+    assert growth.log_value({"n": 15}) == pytest.approx(math.log(4) * math.log(1.5) / math.log(2))
+    assert growth.log_value({"n": 30}) == pytest.approx(math.log(4) + math.log(5 / 4) * math.log(1.5) / math.log(2))
+    assert growth.log_value({"n": 40}) == pytest.approx(math.log(5))
+    assert growth.log_value({"n": 5}) == pytest.approx(-math.log(4)), "below the first, by the first two"
+
+
+def test_beyond_the_last_reading_it_goes_on_as_over_the_last_octave() -> None:
+    """Two readings close together would make noise a trend."""
+    growth = YardstickGrowth()
+    for size, cost in ((10, 7.0), (20, 9.0), (30, 12.0), (38, 99.0), (40, 18.0)):
+        growth.add(size, cost)
+    assert growth.log_value({"n": 80}) == pytest.approx(math.log(36))
+    narrow = YardstickGrowth()
+    for size, cost in ((30, 3.0), (36, 99.0), (40, 4.0)):
+        narrow.add(size, cost)
+    assert narrow.log_value({"n": 30 * (4 / 3) ** 2}) == pytest.approx(math.log(16 / 3)), "less than an octave: all"
+
+
+def test_a_reading_of_nothing_still_has_a_log() -> None:
+    growth = YardstickGrowth()
+    assert growth.add(10, 0.0) > 0
+    assert growth.add(20, 0.5) == 0.5
+    assert growth.log_value({"n": 20}) == pytest.approx(math.log(0.5))
