@@ -22,14 +22,14 @@ SIZES: Final = 12
 def decide_counts(promise: Promise) -> Generator[Request, Answer, Finding]:
     """Reads every size, and reads again, with other workloads, where that does not show the budget kept."""
     limits = count_limits(promise.slack, promise.confidence)
-    run = Run(promise, limits, COUNTER_NOISE)
+    run = Run(promise, COUNTER_NOISE)
     yield from run.climb(Climb(float("inf"), at_least=SIZES))
     first, last = run.ladder.readable, len(run.ladder.sizes)
     evidence = yield from run.read(Rounds(first, last))
     if evidence is None or len(evidence) < FEWEST_SIZES:
         count = 0 if evidence is None else len(evidence)
         nothing = last - first >= FEWEST_SIZES and not any(run.ladder.costs)
-        few = reasons.too_few(run.ladder, count, FEWEST_SIZES)
+        few = reasons.too_few(run.ended, count, FEWEST_SIZES)
         reason = reasons.NOTHING_COUNTED if nothing else few
         return conclude("unmeasured", reason, promise, limits, evidence)
     if not _exceeds(evidence, limits) and is_within(evidence.plain, evidence.gamma, limits):

@@ -7,7 +7,6 @@ from typing import Final
 from pytest_growthbudget.fitting.evidence import Evidence
 from pytest_growthbudget.fitting.judgement import Interval
 from pytest_growthbudget.fitting.verdict import Limits
-from pytest_growthbudget.measuring.readings import Ladder
 
 UNCONFIRMED: Final = "one set of readings is above the slack, and a second set did not agree"
 SUSPICIOUS: Final = "the excess is small, but too surely above zero for the budget to be called kept"
@@ -24,6 +23,7 @@ NOTHING_COUNTED: Final = (
 _SHORT_OF: Final = {
     "": "the cost soon grows too dear to go further; use a smaller `smallest`",
     "largest": "`largest` is too near to the smallest size that can be read; raise `largest` or lower `smallest`",
+    "rounds": "the time limit ended the readings; raise `time_limit`",
     "time": "the time limit ended the climb; raise `time_limit` or lower `smallest`",
     "memory": "the workload grew too large for memory; lower `smallest`, or let the workload hold less",
     "failed": "the body failed at the next size; lower `largest` to below that size",
@@ -72,9 +72,9 @@ def wide(evidence: Evidence, excess: Interval, limits: Limits, memory: Interval 
     return f"{between}: neither surely above {limits.exceeded:.2f} nor surely below {limits.within:.2f}"
 
 
-def too_few(ladder: Ladder, count: int, needed: int) -> str:
+def too_few(ended: str, count: int, needed: int) -> str:
     sizes = "no size" if count == 0 else "only 1 size" if count == 1 else f"only {count} sizes"
-    return f"{sizes} could be read where {needed} are needed: {_SHORT_OF.get(ladder.ended, _SHORT_OF[''])}"
+    return f"{sizes} could be read where {needed} are needed: {_SHORT_OF[ended]}"
 
 
 def runaway(size: int) -> str:

@@ -35,6 +35,7 @@ from pytest_growthbudget.fitting.verdict import (
     RESIDENT,
     TOP_FOOTPRINT,
     TOP_SIZES,
+    Limits,
     Says,
     clock_limits,
     exceeds,
@@ -67,7 +68,7 @@ def decide(promise: Promise) -> Generator[Request, Answer, Finding]:
     """The rule as a generator: yields requests, is sent what they ask for, returns a `Finding`."""
     if promise.deterministic:
         return (yield from decide_counts(promise))
-    case = _Clock(Run(promise, clock_limits(promise.slack, promise.confidence), CLOCK_NOISE))
+    case = _Clock(Run(promise, CLOCK_NOISE), clock_limits(promise.slack, promise.confidence))
     for stage in (case.stage_a, case.stage_b, case.stage_c):
         found = yield from stage()
         if found is not None:
@@ -80,6 +81,7 @@ class _Clock:
     """The stages over one run. `first` and `last` bound the sizes in use; `doubt` is why they were not believed."""
 
     run: Run
+    limits: Limits
     stage: str = "A"
     first: int = 0
     last: int = 0
@@ -104,7 +106,7 @@ class _Clock:
         found = yield from self.examine([Rounds(self.first, self.last)], top=False)
         if found is not None or self.doubt:
             return found
-        evidence, limits = self.judged(), run.limits
+        evidence, limits = self.judged(), self.limits
         if not is_within(evidence.plain, evidence.gamma, limits):
             return None
         if is_suspicious(evidence.plain, evidence.gamma, limits.suspect, limits):
@@ -181,7 +183,7 @@ class _Clock:
 
         The last few are judged alone only while they are not far outside the caches, whose edge tilts them most.
         """
-        limits = self.run.limits
+        limits = self.limits
         windows: list[Window] = [(lambda whole: whole, limits.exceeded)]
         if top and len(evidence) > TOP_SIZES and evidence.footprint <= TOP_FOOTPRINT:
             windows.append((lambda whole: whole.last(TOP_SIZES), limits.exceeded_top))
@@ -189,11 +191,11 @@ class _Clock:
 
     def says(self, evidence: Evidence, window: Window) -> Says:
         cut, limit = window
-        return exceeds(cut(evidence), limit, self.run.limits, self.run.curve)
+        return exceeds(cut(evidence), limit, self.limits, self.run.curve)
 
     def believed_within(self) -> Asking:
         """Within on the plain costs or, past the caches, on the deflated ones, unless the fit is suspicious."""
-        evidence, limits = self.judged(), self.run.limits
+        evidence, limits = self.judged(), self.limits
         plain, gamma = evidence.plain, evidence.gamma
         # Far outside the caches a lower bound above zero says nothing against a body.
         near = evidence.footprint <= TOP_FOOTPRINT
@@ -213,7 +215,7 @@ class _Clock:
 
     def runs_ahead_in_cache(self, resident: Evidence) -> bool:
         """Whether the cost runs ahead where memory cannot be the reason, so that no allowance excuses it."""
-        limits = self.run.limits
+        limits = self.limits
         assert resident.deflated is not None
         return resident.deflated.delta.quantiles((limits.lower,))[0] > limits.resident
 
@@ -228,7 +230,7 @@ class _Clock:
         height = np.log(joined.seen.costs) - joined.seen.log_growth
         rise = float(height[-1] - height[before].mean())
         distance = float(joined.seen.regressor[-1] - joined.seen.regressor[before].mean())
-        if rise > run.limits.look_on * distance and joined.allowed is not None:
+        if rise > self.limits.look_on * distance and joined.allowed is not None:
             rise -= float(joined.allowed[-1] - joined.allowed[before].mean())
         return rise / distance
 
@@ -239,7 +241,7 @@ class _Clock:
         return self.evidence
 
     def within(self, *, deflated: bool = False) -> Finding:
-        evidence, limits = self.judged(), self.run.limits
+        evidence, limits = self.judged(), self.limits
         sizes, costs = evidence.seen.sizes, evidence.seen.costs
         if self.run.ladder.ended == "runaway":
             return self.conclude("undecided", reasons.runaway(self.run.ladder.sizes[-1]))
@@ -249,7 +251,7 @@ class _Clock:
 
     def exceeded(self, window: Window, *, confirmed: bool) -> Finding:
         cut, _ = window
-        evidence, limits = cut(self.judged()), self.run.limits
+        evidence, limits = cut(self.judged()), self.limits
         reason = reasons.exceeded(
             evidence,
             self.left_of(evidence) or shown_excess(evidence.plain, evidence.gamma, limits.confidence),
@@ -263,11 +265,11 @@ class _Clock:
         """The excess that is left once memory is allowed for; None where it was not."""
         if not self.run.curve_consulted or evidence.deflated is None:
             return None
-        return shown_excess(evidence.deflated, evidence.gamma, self.run.limits.confidence)
+        return shown_excess(evidence.deflated, evidence.gamma, self.limits.confidence)
 
     def cut_short(self) -> Finding:
         """The verdict when time is over: of what there is, only what is beyond doubt counts."""
-        run, evidence, limits = self.run, self.evidence, self.run.limits
+        run, evidence, limits = self.run, self.evidence, self.limits
         if evidence is None or len(evidence) < FEWEST_SIZES:
             return self.unmeasured()
         climbed = run.climbed(self.first)
@@ -291,15 +293,15 @@ class _Clock:
         return self.conclude("undecided", self.why(), confirmed=confirmed, memory=True)
 
     def unmeasured(self) -> Finding:
-        ladder, evidence = self.run.ladder, self.evidence
-        count = self.run.readable if evidence is None else len(evidence)
-        reason = reasons.TOO_FAST if self.run.too_fast() else reasons.too_few(ladder, count, FEWEST_SIZES)
+        run, evidence = self.run, self.evidence
+        count = len(evidence) if evidence is not None else 0 if run.out_of_time else run.readable
+        reason = reasons.TOO_FAST if run.too_fast() else reasons.too_few(run.ended, count, FEWEST_SIZES)
         return self.conclude("unmeasured", reason)
 
     def why(self) -> str:
         if self.doubt:
             return self.doubt
-        evidence, limits = self.judged(), self.run.limits
+        evidence, limits = self.judged(), self.limits
         excess = shown_excess(evidence.plain, evidence.gamma, limits.confidence)
         return reasons.wide(evidence, excess, limits, self.left_of(evidence))
 
@@ -316,7 +318,7 @@ class _Clock:
             verdict,
             reason,
             self.run.promise,
-            self.run.limits,
+            self.limits,
             evidence or self.evidence,
             whole=self.evidence,
             stage=self.stage,

@@ -7,7 +7,6 @@ from dataclasses import dataclass, field
 
 from pytest_growthbudget.fitting.evidence import Evidence, assemble, gather
 from pytest_growthbudget.fitting.excess import FEWEST_SIZES
-from pytest_growthbudget.fitting.verdict import Limits
 from pytest_growthbudget.measuring.readings import (
     Answer,
     Climb,
@@ -27,7 +26,6 @@ class Run:
     """Asks, remembers, and never asks twice. The only mutable object of the room; one lives in each `decide`."""
 
     promise: Promise
-    limits: Limits
     noise: float
     ladder: Ladder = field(default_factory=lambda: Ladder(sizes=(), costs=(), footprints=()))
     out_of_time: bool = False
@@ -107,6 +105,11 @@ class Run:
     def readable(self) -> int:
         """How many sizes of the ladder last long enough for the clock."""
         return len(self.ladder.sizes) - self.ladder.readable
+
+    @property
+    def ended(self) -> str:
+        """What ended the readings: the time limit in the midst of them, or what ended the climb."""
+        return "rounds" if self.out_of_time else self.ladder.ended
 
     def too_fast(self) -> bool:
         """Whether sizes are lacking because calls are too short, not because there were too few of them."""

@@ -211,7 +211,9 @@ def test_where_time_left_no_first_set_it_is_unmeasured() -> None:
     for read, said in ((0, "no size"), (3, "only 3 sizes")):
         found, _ = decided(SIZES, workloads, GROWTHS["n"], first=read)
         assert found.verdict == "unmeasured"
-        assert found.reason.startswith(f"{said} could be read where 5 are needed")
+        assert found.reason == (
+            f"{said} could be read where 5 are needed: the time limit ended the readings; raise `time_limit`"
+        )
         assert len(found.sizes) == read
 
 

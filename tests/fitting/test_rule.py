@@ -256,8 +256,10 @@ def test_time_that_ran_out_on_a_sound_body() -> None:
 
 def test_time_that_ran_out_before_any_round() -> None:
     found = Formula(lambda n: 100.0 * n, rounds=0).decide(BUDGETS["n"])
-    assert found.verdict == "unmeasured"
-    assert Formula(lambda n: 100.0 * n, rounds=0).decide(BUDGETS["n"]).sizes == ()
+    assert (found.verdict, found.sizes) == ("unmeasured", ())
+    assert found.reason == (
+        "no size could be read where 5 are needed: the time limit ended the readings; raise `time_limit`"
+    )
 
 
 def test_unknown_footprints_are_no_obstacle_to_within() -> None:

@@ -98,7 +98,11 @@ def test_an_excess_in_the_last_ten_sizes_alone_is_found_and_said_of_them() -> No
     found = case.decide(BUDGETS["n"])
     assert (found.verdict, found.stage) == ("exceeded", "B")
     assert len(found.sizes) > 10
-    assert found.reason.startswith(f"over n = {found.sizes[-10].size} to {found.sizes[-1].size} the excess is at least")
+    assert found.excess is not None
+    assert found.reason == (
+        f"over n = {found.sizes[-10].size} to {found.sizes[-1].size} the excess is at least {found.excess.low:.2f}, "
+        "above the slack of 0.15, and a second set of readings agrees"
+    )
 
 
 def test_stage_a_judges_no_sizes_alone() -> None:
@@ -148,6 +152,8 @@ def scattered(n: float) -> float:
 def test_the_look_ahead_allows_for_memory() -> None:
     found = Formula(scattered, bytes_each=400.0, curve=STEEP_CURVE).decide(BUDGETS["n"])
     assert (found.verdict, found.stage) == ("within", "A")
+    assert found.excess is not None
+    assert found.resolution == pytest.approx(0.15 + found.excess.estimate - found.excess.low)
     flat = Formula(scattered, bytes_each=400.0, curve=FLAT_CURVE).decide(BUDGETS["n"])
     assert (flat.verdict, flat.stage) == ("undecided", "B")
 
