@@ -33,7 +33,7 @@ def decide_counts(promise: Promise) -> Generator[Request, Answer, Finding]:
         reason = reasons.NOTHING_COUNTED if nothing else few
         return conclude("unmeasured", reason, promise, limits, evidence)
     if not _exceeds(evidence, limits) and is_within(evidence.plain, evidence.gamma, limits):
-        reason = reasons.within(evidence, limits, deflated=False)
+        reason = reasons.within(evidence, limits)
         return conclude("within", reason, promise, limits, evidence)
 
     again = yield from run.read(Rounds(first, last, repeat=1))
@@ -49,7 +49,7 @@ def decide_counts(promise: Promise) -> Generator[Request, Answer, Finding]:
     both = yield from run.read(Rounds(first, last), Rounds(first, last, repeat=1))
     assert both is not None
     if is_within(both.plain, both.gamma, limits):
-        return conclude("within", reasons.within(both, limits, deflated=False), promise, limits, both)
+        return conclude("within", reasons.within(both, limits), promise, limits, both)
     excess = shown_excess(both.plain, both.gamma, limits.confidence)
     return conclude("undecided", reasons.wide(both, excess, limits), promise, limits, both)
 

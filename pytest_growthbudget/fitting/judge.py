@@ -94,7 +94,7 @@ def decide_once(promise: Promise, evidence: Evidence, limits: Limits) -> Finding
     if is_exceeded(fit, fit, gamma, limits.exceeded, limits) and rises_enough(evidence.seen):
         verdict, reason = "exceeded", reasons.exceeded(evidence, excess, limits, agreed="")
     elif is_within(fit, gamma, limits):
-        verdict, reason = "within", reasons.within(evidence, limits, deflated=False)
+        verdict, reason = "within", reasons.within(evidence, limits)
     else:
         verdict, reason = "undecided", reasons.wide(evidence, excess, limits)
     return conclude(verdict, reason, promise, limits, evidence)

@@ -26,7 +26,6 @@ _SHORT_OF: Final = {
     "rounds": "the time limit ended the readings; raise `time_limit`",
     "time": "the time limit ended the climb; raise `time_limit` or lower `smallest`",
     "memory": "the workload grew too large for memory; lower `smallest`, or let the workload hold less",
-    "failed": "the body failed at the next size; lower `largest` to below that size",
     "runaway": "the next call ran away and was stopped; lower `smallest`, or look at that call first",
 }
 TOO_FAST: Final = (
@@ -44,7 +43,7 @@ def _two(value: float) -> str:
     return f"{round(value, 2) + 0.0:.2f}"  # no -0.00
 
 
-def within(evidence: Evidence, limits: Limits, *, deflated: bool) -> str:
+def within(evidence: Evidence, limits: Limits, *, deflated: bool = False) -> str:
     memory = ", once memory is allowed for," if deflated else ""
     return f"over {over(evidence)} the excess{memory} is below the limit of {limits.within:.2f}"
 

@@ -42,7 +42,7 @@ class Run:
     @property
     def curve_consulted(self) -> bool:
         """Whether memory has been allowed for in this run."""
-        return self._curve_known and self._curve is not None
+        return self._curve is not None
 
     def climb(self, request: Climb) -> Generator[Request, Answer, None]:
         """Climbs further, unless the ladder has an end."""
@@ -55,8 +55,6 @@ class Run:
         """Readings over ranges of the ladder, put together; None where there are none."""
         several: list[Series] = []
         for request in requests:
-            if request.first >= request.last:
-                continue
             if request not in self._series:
                 answer = yield request
                 assert isinstance(answer, Series)

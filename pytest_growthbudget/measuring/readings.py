@@ -35,8 +35,8 @@ class Ladder:
 
     `costs[i]`: the smaller of the two calls made at `sizes[i]`. `footprints[i]`: bytes held by the workload and
     one call, interpolated in log-log between the sizes where it was measured; 0.0 where unknown.
-    `ended`: why the climb went no higher: "" (it stopped where it was asked to), "largest", "time", "memory",
-    "failed" or "runaway". `readable`: index of the first size whose readings are long enough for the clock.
+    `ended`: why the climb went no higher: "" (it stopped where it was asked to), "largest", "time", "memory"
+    or "runaway". `readable`: index of the first size whose readings are long enough for the clock.
     """
 
     sizes: tuple[int, ...]

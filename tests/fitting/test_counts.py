@@ -142,7 +142,7 @@ def test_undecided_counts_are_read_again_and_put_together() -> None:
 
     found, asked = decided(SIZES, workloads, GROWTHS["n2"])
     assert [request.repeat for request in asked if isinstance(request, Rounds)] == [0, 1]
-    assert found.verdict in ("within", "undecided")
+    assert (found.verdict, found.reason) == ("within", "over n = 100 to 4525 the excess is below the limit of 0.10")
     assert {row.readings for row in found.sizes} == {12}
 
 
@@ -186,6 +186,13 @@ def test_the_confidence_asked_for_holds_for_counts() -> None:
 def test_five_sizes_are_enough() -> None:
     found, _ = decided(SIZES[:5], lambda repeat: [[n * n for n in SIZES[:5]]], GROWTHS["n"])
     assert (found.verdict, found.confirmed) == ("exceeded", True)
+    found, _ = decided(SIZES[:5], lambda repeat: [[n if repeat else n * n for n in SIZES[:5]]], GROWTHS["n"])
+    assert (found.verdict, found.confirmed) == ("undecided", False)
+
+
+def test_no_size_at_all() -> None:
+    found, _ = decided((), lambda repeat: [[]], GROWTHS["n"])
+    assert found.reason.startswith("no size could be read where 5 are needed")
 
 
 def test_nothing_counted_is_told_from_too_few_sizes() -> None:

@@ -180,7 +180,6 @@ def test_an_exponential_body_is_named_and_foretold_as_one() -> None:
         ("largest", "raise `largest` or lower `smallest`"),
         ("time", "raise `time_limit` or lower `smallest`"),
         ("memory", "let the workload hold less"),
-        ("failed", "lower `largest`"),
         ("runaway", "look at that call first"),
     ],
 )
