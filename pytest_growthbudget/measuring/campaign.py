@@ -135,7 +135,7 @@ class Campaign:
     def _climb(self, request: Climb) -> Ladder:
         while not self._ended and self._wants_more(request):
             self._step_up()
-        if not self._refined and self._rungs:
+        if not self._refined:
             self._refine()
         return self._ladder()
 
@@ -235,7 +235,7 @@ class Campaign:
         return self.limits.clock and reading.cost * reading.calls < self.limits.floor
 
     def _calls_for(self, cost: float) -> int:
-        return max(1, math.ceil(self.limits.batch / max(cost, 1.0)))
+        return math.ceil(self.limits.batch / max(cost, 1.0))
 
     def _calls_at(self, size: int) -> int:
         """Calls in one reading at `size`: as many as its nearest smaller neighbour needed, none of it where dear."""
@@ -303,7 +303,7 @@ class Campaign:
         known = sorted(self._bytes.items())
         if len(known) == 1:
             at, held = known[0]
-            return held * max(size / at, 1.0) if size > at else held
+            return held * max(size / at, 1.0)
         index = min(max(bisect.bisect_left([n for n, _ in known], size), 1), len(known) - 1)
         (n1, b1), (n2, b2) = known[index - 1], known[index]
         slope = math.log(b2 / b1) / math.log(n2 / n1)

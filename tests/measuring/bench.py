@@ -69,12 +69,14 @@ def rounds(bench: Bench, *requests: Rounds, cost: float = 5 * MS, **limits: Any)
     return series
 
 
-def looks_ahead(cost: float = 60 * MS, footprint: float = float(1 << 25)) -> Generator[Any, Any, Peeked | None]:
-    """A rule that climbs to 5 ms and looks ahead from there."""
-    ladder = yield Climb(5 * MS)
+def looks_ahead(
+    climbed: Climb | None = None, cost: float = 60 * MS, footprint: float = float(1 << 25)
+) -> Generator[Any, Any, Peeked | None]:
+    """A rule that climbs, to 5 ms unless told otherwise, and looks ahead from there."""
+    ladder = yield climbed or Climb(5 * MS)
     peeked: Peeked | None = yield Peek(last=len(ladder.sizes), cost=cost, footprint=footprint, beyond=1.9)
     return peeked
 
 
-def peek(bench: Bench, **limits: Any) -> Peeked | None:
-    return bench.campaign(**limits).run(looks_ahead())
+def peek(bench: Bench, climbed: Climb | None = None, **limits: Any) -> Peeked | None:
+    return bench.campaign(**limits).run(looks_ahead(climbed))

@@ -11,7 +11,7 @@ import pytest
 
 from pytest_growthbudget.measuring.campaign import MOST_CLIMBED, MS
 from pytest_growthbudget.measuring.readings import Climb, Rounds, Series
-from tests.measuring.bench import Bench, asks, climb, peek, rounds
+from tests.measuring.bench import Bench, asks, climb, rounds
 
 
 def test_the_climb_steps_by_half_octaves_from_a_start_that_is_no_power_of_two() -> None:
@@ -93,6 +93,7 @@ def test_largest_and_smallest_are_kept() -> None:
 def test_an_exponential_budget_steps_by_one() -> None:
     ladder = climb(Bench(lambda n: 100.0 * 2.0**n), exponential=True)
     assert ladder.sizes == tuple(range(ladder.sizes[0], ladder.sizes[-1] + 1))
+    assert ladder.sizes[0] in (1, 2)
 
 
 def test_footprints_are_measured_at_a_few_sizes_and_interpolated() -> None:
@@ -170,45 +171,6 @@ def test_an_overrun_in_the_rounds_keeps_what_was_read() -> None:
     series = campaign.run(rule())
     assert not series.complete
     assert all(costs for costs in series.costs)
-
-
-def test_the_look_ahead_goes_to_the_size_that_is_foreseen_to_cost_as_much_as_allowed() -> None:
-    peeked = peek(Bench(lambda n: 100.0 * n))
-    assert peeked is not None
-    assert 20 * MS < peeked.reading.cost <= 61 * MS
-
-
-def test_the_look_ahead_stays_under_the_footprint() -> None:
-    peeked = peek(Bench(lambda n: 100.0 * n, held=lambda n: 300.0 * n))
-    assert peeked is not None
-    assert peeked.footprint <= 1 << 25
-
-
-def test_the_look_ahead_sees_a_cost_that_soars_and_stops_there() -> None:
-    bench = Bench(lambda n: 100.0 * n + 1e-6 * n**3)
-    peeked = peek(bench)
-    assert peeked is not None
-    assert peeked.reading.cost > 5 * MS
-    assert bench.time < 5e9
-
-
-def test_the_look_ahead_goes_as_far_as_the_time_for_the_workload_allows() -> None:
-    """A cheap body whose workload is dear to build: the size that would cost enough is out of reach."""
-
-    def far(time: float) -> tuple[int, float]:
-        bench = Bench(lambda n: 1e4 + n, build=lambda n: 2e3 * n, held=lambda n: 8.0 * n)
-        peeked = peek(bench, Climb(5 * MS, float(1 << 20), at_least=9), time=time)
-        assert peeked is not None
-        return peeked.reading.size, bench.time
-
-    (near, spent), (further, more) = far(20e9), far(60e9)
-    assert 1.9 * 145_000 < near < further
-    assert spent < 20e9
-    assert more < 60e9
-
-
-def test_no_look_ahead_past_the_largest_size() -> None:
-    assert peek(Bench(lambda n: 100.0 * n), largest=60_000) is None
 
 
 def test_a_deterministic_meter_is_read_once_and_climbs_by_the_time_a_reading_takes() -> None:

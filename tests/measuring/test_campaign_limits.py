@@ -9,10 +9,10 @@ from typing import Any
 
 import pytest
 
-from pytest_growthbudget.measuring.campaign import ENOUGH_COUNTED, MOST_COUNTED, MS, RISK_OF_PEEK
+from pytest_growthbudget.measuring.campaign import ENOUGH_COUNTED, MOST_COUNTED, MS
 from pytest_growthbudget.measuring.guards import Exhausted
 from pytest_growthbudget.measuring.readings import Climb, Ladder, Peek, Reading, Rounds, Series
-from tests.measuring.bench import Bench, asks, climb, looks_ahead, peek, rounds
+from tests.measuring.bench import Bench, asks, climb, rounds
 
 # ------------------------------------------------------------ how far a meter that is no clock climbs
 
@@ -49,6 +49,12 @@ def test_as_many_readable_sizes_as_asked_for_are_climbed_however_large() -> None
     assert sum(cost >= 5_000 for cost in ladder.costs) == 9
 
 
+def test_calls_that_are_repeated_are_readable_however_cheap() -> None:
+    bench = Bench(lambda n: 80.0 + n, held=lambda n: 1e6 * n)
+    (ladder,) = bench.campaign(repeatable=True).run(asks(Climb(30 * MS, footprint=1.0, at_least=9)))
+    assert len(ladder.sizes) == 9
+
+
 # ------------------------------------------------------------ sizes filled in
 
 
@@ -60,9 +66,34 @@ def test_a_narrow_range_of_sizes_is_filled_in(clock: bool) -> None:
     assert ladder.sizes == tuple(sorted(set(ladder.sizes)))
 
 
-def test_sizes_are_filled_in_once() -> None:
-    first, again = Bench(lambda n: 5.0 * n**3).campaign().run(asks(Climb(5 * MS), Climb(5 * MS)))
-    assert first == again
+def test_a_narrow_range_of_sizes_of_a_repeated_body_is_filled_in() -> None:
+    assert len(climb(Bench(lambda n: 80.0 + n), smallest=50, largest=700, repeatable=True).sizes) > 12
+
+
+def test_two_sizes_are_filled_in() -> None:
+    assert climb(Bench(lambda n: 1e4 * n), smallest=100, largest=110).sizes == (100, 105, 110)
+
+
+def test_sizes_are_filled_in_as_far_as_time_allows() -> None:
+    bench = Bench(lambda n: 1e8)
+    ladder = climb(bench, cost=1e9, time=2.2e9, smallest=50)
+    assert ladder.ended == "time"
+    assert bench.time <= 2.2e9
+
+
+def test_sizes_are_filled_in_before_any_was_read() -> None:
+    """A rule asks for rounds by place on the ladder: a later climb adds at the top alone, however few sizes it has."""
+    campaign = Bench(lambda n: 100.0 * n).campaign(smallest=2000, largest=70_000)
+    low, high = campaign.run(asks(Climb(5 * MS), Climb(30 * MS)))
+    assert high.ended == "largest"
+    assert high.sizes[: len(low.sizes)] == low.sizes
+
+
+def test_a_climb_goes_on_in_the_steps_in_which_sizes_were_filled_in() -> None:
+    low, high = Bench(lambda n: 5.0 * n**3).campaign().run(asks(Climb(5 * MS), Climb(300 * MS)))
+    added = high.sizes[len(low.sizes) - 1 :]
+    assert len(added) > 3
+    assert all(b / a < 1.3 for a, b in itertools.pairwise(added))
 
 
 def test_nothing_is_called_after_a_call_that_ran_away() -> None:
@@ -89,7 +120,7 @@ def test_a_call_of_the_climb_may_take_half_of_what_is_left_and_one_of_the_rounds
         plain(time)
 
     campaign.allow = allow
-    campaign.run(asks(Climb(5 * MS), Rounds(0, 99, calls=1)))
+    campaign.run(asks(Climb(5 * MS), Peek(8, 60 * MS, math.inf, 1.9), Rounds(0, 99, calls=1)))
     assert bench.allowed[:-1] == [each / 2 for each in left[:-1]]
     assert bench.allowed[-1] == math.inf
 
@@ -114,6 +145,15 @@ def test_a_climb_that_time_ended_leaves_time_for_one_set_of_readings(limits: dic
     assert ladder.ended == "time"
     assert series.complete
     assert bench.time <= 1e9
+
+
+@pytest.mark.parametrize("time", [0.3e9, 1e9, 2e9, 3e9, 5e9])
+def test_time_is_left_even_where_each_size_costs_four_times_the_one_before(time: float) -> None:
+    bench = Bench(lambda n: 1e4 * 4.0**n)
+    ladder, series = bench.campaign(time=time, exponential=True).run(asks(Climb(math.inf), Rounds(0, 99, calls=3)))
+    assert ladder.ended == "time"
+    assert series.complete
+    assert bench.time <= time
 
 
 def test_a_body_that_takes_half_the_time_is_called_once_at_its_size() -> None:
@@ -152,15 +192,17 @@ def test_a_workload_that_cannot_be_weighed_ends_the_climb_with_footprints_unknow
     assert set(ladder.footprints) == {0.0}
 
 
+@pytest.mark.parametrize("repeatable", [False, True])
 @pytest.mark.parametrize("power", [0.0, 1.0, 2.0])
-def test_footprints_follow_a_power_of_the_size(power: float) -> None:
+def test_footprints_follow_a_power_of_the_size(power: float, repeatable: bool) -> None:
     weighed: list[int] = []
 
     def held(n: int) -> float:
         weighed.append(n)
         return 64.0 * n**power
 
-    ladder = climb(Bench(lambda n: 100.0 * n, held=held))
+    each = 0.1 if repeatable else 100.0
+    ladder = climb(Bench(lambda n: each * n, held=held), repeatable=repeatable, largest=100_000)
     for size, known in zip(ladder.sizes, ladder.footprints, strict=True):
         assert known == pytest.approx(64.0 * max(size, weighed[0]) ** power)
 
@@ -203,6 +245,8 @@ def test_a_reading_of_a_repeatable_body_lasts_as_long_as_a_batch() -> None:
     assert ladder.readable == 0
     of_the_largest = [calls for size, calls in bench.taken if size == ladder.sizes[-1]]
     assert of_the_largest == [1, 1, 1]
+    sizes = [size for size, _ in bench.taken]
+    assert {sizes.count(size) for size in ladder.sizes[1:]} == {3}, "two in the climb, none of them for nothing"
 
 
 def test_readings_are_limited_by_what_the_body_takes_and_by_what_its_fixtures_take() -> None:
@@ -216,92 +260,12 @@ def test_readings_are_limited_by_what_the_body_takes_and_by_what_its_fixtures_ta
         assert len(costs) == min(max(int(8 * MS / (6e3 + 1e5 * size)), 2), 20)
 
 
+def test_readings_of_a_repeated_body_are_limited_by_what_all_its_calls_take() -> None:
+    repeated = Bench(lambda n: 80.0)
+    (series,) = rounds(repeated, Rounds(0, 20), repeatable=True, largest=10_000, per_size=2 * MS, most=20)
+    assert {len(costs) for costs in series.costs} == {10}
+
+
 def test_rounds_over_no_size_are_an_empty_series() -> None:
     (series,) = rounds(Bench(lambda n: 1e4 * n), Rounds(99, 120))
     assert series == Series(sizes=(), costs=(), complete=True)
-
-
-# ------------------------------------------------------------ the look ahead
-
-
-@pytest.mark.parametrize("power", [1.0, 2.0])
-def test_a_far_look_ahead_goes_in_steps_that_each_risk_thirtyfold(power: float) -> None:
-    bench = Bench(lambda n: 10.0 * n**power, held=lambda n: 1.0)
-    peeked = bench.campaign(time=1e12).run(looks_ahead(cost=20_000 * MS))
-    assert peeked is not None
-    sizes = [size for size, _ in itertools.groupby(size for size, _ in bench.taken)]
-    costs = [bench.cost(size) for size in sizes]
-    assert costs[-1] == pytest.approx(20_000 * MS, rel=0.05)
-    assert costs[-2] == pytest.approx(costs[-3] * RISK_OF_PEEK, rel=0.05)
-    assert [size for size, _ in bench.taken[-3:]] == [sizes[-2], sizes[-1], sizes[-1]]
-
-
-def test_the_look_ahead_takes_the_smaller_of_two_calls() -> None:
-    class Settling(Bench):
-        def take(self, size: int, calls: int) -> Reading:
-            again = bool(self.taken) and self.taken[-1][0] == size
-            reading = super().take(size, calls)
-            return reading if again else Reading(size=size, cost=1.5 * reading.cost, elapsed=reading.elapsed)
-
-    peeked = peek(Settling(lambda n: 100.0 * n))
-    assert peeked is not None
-    assert peeked.reading.cost == 100.0 * peeked.reading.size
-    assert peeked.reading.calls == 1
-
-
-def test_the_look_ahead_must_go_far_beyond_the_sizes_it_was_asked_about() -> None:
-    """Not beyond those that happen to have been climbed."""
-
-    def reached(beyond: float, below: int) -> bool:
-        def rule() -> Generator[Any, Any, bool]:
-            ladder = yield Climb(5 * MS)
-            peeked = yield Peek(last=len(ladder.sizes) - below, cost=12 * MS, footprint=math.inf, beyond=beyond)
-            return peeked is not None
-
-        return Bench(lambda n: 100.0 * n).campaign().run(rule())
-
-    assert not reached(3.0, 0)
-    assert reached(3.0, 2)
-
-
-@pytest.mark.parametrize("ended", ["time", "runaway"])
-def test_no_look_ahead_where_the_climb_was_cut_off(ended: str) -> None:
-    dear = (lambda n: 1e5 * n) if ended == "time" else (lambda n: 0.0)
-    bench = Bench(lambda n: 100.0 * n if ended == "time" or n < 1_000 else 1e15, build=dear, interrupt_after=1e9)
-    before: list[int] = []
-
-    def rule() -> Generator[Any, Any, tuple[Ladder, object]]:
-        ladder = yield Climb(5 * MS)
-        before.append(len(bench.taken))
-        peeked = yield Peek(last=len(ladder.sizes), cost=60 * MS, footprint=math.inf, beyond=1.9)
-        return ladder, peeked
-
-    ladder, peeked = bench.campaign(time=2e9).run(rule())
-    assert ladder.ended == ended
-    assert peeked is None
-    assert len(bench.taken) == before[0]
-
-
-def test_no_look_ahead_that_does_not_fit_the_time() -> None:
-    bench = Bench(lambda n: 100.0 * n)
-    campaign = bench.campaign(time=1e9)
-
-    def rule() -> Generator[Any, Any, object]:
-        ladder = yield Climb(5 * MS)
-        campaign.extend(150 * MS - campaign.left)
-        peeked: object = yield Peek(last=len(ladder.sizes), cost=60 * MS, footprint=math.inf, beyond=1.9)
-        return peeked
-
-    assert campaign.run(rule()) is None
-
-
-def test_a_look_ahead_that_runs_away_is_remembered() -> None:
-    bench = Bench(lambda n: 100.0 * n if n < 1e5 else 1e15, interrupt_after=1e9)
-    campaign = bench.campaign()
-    assert campaign.run(looks_ahead()) is None
-    assert campaign.ran_away == (bench.taken[-1][0], bench.allowed[-1])
-    assert bench.taken[-1][0] >= 1e5
-
-
-def test_no_look_ahead_from_two_sizes() -> None:
-    assert peek(Bench(lambda n: 1e4 * n), smallest=100, largest=101) is None
