@@ -175,19 +175,13 @@ def fit_excess(seen: Observations, *, noise: float = CLOCK_NOISE) -> Excess:
     `noise`: the standard deviation of log cost below which residuals are not believed.
     """
     lines = fit_lines(seen, noise)
-    plain = lines.kind < 2
     gamma = seen.gamma
     weights, hidden_weights = lines.weights(), lines.weights(with_growth=True)
     share = lines.left[:, -1:] / seen.costs[-1]
     hidden_share = np.where(lines.kind == 2, share[:, 0], 1.0)[:, None]
     return Excess(
-        delta=pruned(lines.slope[plain], lines.error[plain], weights[plain], lines.freedom),
-        at_top=pruned(
-            (share * (gamma + lines.slope) - gamma)[plain],
-            (share * lines.error)[plain],
-            weights[plain],
-            lines.freedom,
-        ),
+        delta=pruned(lines.slope, lines.error, weights, lines.freedom),
+        at_top=pruned(share * (gamma + lines.slope) - gamma, share * lines.error, weights, lines.freedom),
         hidden=pruned(hidden_share * lines.slope, hidden_share * lines.error, hidden_weights, lines.freedom),
         count=len(seen),
     )
@@ -262,7 +256,7 @@ def fit_lines(seen: Observations, noise: float = CLOCK_NOISE) -> Lines:
 def _priors(kind: NDArray[np.intp], *, with_growth: bool) -> Array:
     subtracted = len(_OFFSETS) * (2 if with_growth else 1)
     each = (1 - _PRIOR_OF_NO_OFFSET) / subtracted
-    never = each if with_growth else np.finfo(float).tiny
+    never = each if with_growth else np.finfo(float).tiny  # which `pruned` drops
     return np.choose(kind, (_PRIOR_OF_NO_OFFSET, each, never))
 
 

@@ -87,29 +87,27 @@ def log_cost_at(seen: Observations, lines: Lines, allowed: float, regressor: flo
     3.4 [from memory]): the walk goes on from where the largest size left it, so the interval widens with the
     distance. The lines are averaged as for the excess. The white noise of a single reading is left out.
     """
-    plain = lines.kind < 2
     ahead = float(regressor - seen.regressor[-1])
     at = np.array([max(regressor, seen.regressor[0])])  # the walk starts at the smallest size
-    one, tilt, target = lines.one[plain], lines.tilt[plain], lines.target[plain]
-    level, slope, rss, det = lines.level[plain], lines.slope[plain], lines.rss[plain], lines.det[plain]
+    one, tilt = lines.one, lines.tilt
 
-    leading = level + slope * ahead + allowed
-    offset = (seen.costs - lines.left[plain])[:, :1]
+    leading = lines.level + lines.slope * ahead + allowed
+    offset = (seen.costs - lines.left)[:, :1]
     log_cost = np.logaddexp(leading, np.log(np.maximum(offset, 1e-300)))
     share = np.exp(leading - log_cost)
 
     covariance = WALK_SHARES[:, None] * walk(seen.regressor, at, seen.regressor)[:, 0]
     carried = whitened(seen.regressor, covariance)
-    residual = target - level[..., None] * one - slope[..., None] * tilt
+    residual = lines.target - lines.level[..., None] * one - lines.slope[..., None] * tilt
     centre = log_cost + (residual * carried).sum(-1)
 
     unexplained = WALK_SHARES * walk(at, at, seen.regressor)[0, 0] - (carried * carried).sum(-1)
     a1 = share - (one * carried).sum(-1)
     a2 = share * ahead - (tilt * carried).sum(-1)
     s11, s12, s22 = (one * one).sum(-1), (one * tilt).sum(-1), (tilt * tilt).sum(-1)
-    spread = (a1 * a1 * s22 - 2 * a1 * a2 * s12 + a2 * a2 * s11) / det
-    scale = np.sqrt(rss / lines.freedom * np.maximum(unexplained + spread, 1e-12))
-    return pruned(centre, scale, lines.weights()[plain], lines.freedom)
+    spread = (a1 * a1 * s22 - 2 * a1 * a2 * s12 + a2 * a2 * s11) / lines.det
+    scale = np.sqrt(lines.rss / lines.freedom * np.maximum(unexplained + spread, 1e-12))
+    return pruned(centre, scale, lines.weights(), lines.freedom)
 
 
 def allowed_cost(seen: Observations, log_growth: LogGrowth, size: float) -> float:
