@@ -41,7 +41,7 @@ class YardstickGrowth:
             far = max(i for i in range(len(known) - 1) if i == 0 or 2 * known[i] <= known[-1])
             slope = (logs[-1] - logs[far]) / math.log(known[-1] / known[far])
             return logs[-1] + slope * (x - math.log(known[-1]))
-        right = min(max(bisect.bisect_right(known, n), 1), len(known) - 1)
+        right = max(bisect.bisect_right(known, n), 1)
         left = right - 1
         share = (x - math.log(known[left])) / math.log(known[right] / known[left])
         return logs[left] + share * (logs[right] - logs[left])

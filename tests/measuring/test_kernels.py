@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 import json
 import math
 import socket
@@ -142,3 +143,21 @@ def test_the_machine_is_named_without_its_host() -> None:
     assert socket.gethostname() not in key or len(socket.gethostname()) < 4
     assert "bit" in key
     assert "\n" not in key
+
+
+@pytest.mark.parametrize("collecting", [True, False])
+def test_the_collection_of_garbage_is_left_as_it_was(collecting: bool) -> None:
+    machine, seen = Machine(), []
+    was = gc.isenabled()
+
+    def each(held: float) -> float:
+        seen.append(gc.isenabled())
+        return 10.0
+
+    try:
+        (gc.enable if collecting else gc.disable)()
+        measure_curve(machine.clock, largest=256 * KIB, kernels=[machine.kernel(each)])
+        assert gc.isenabled() is collecting
+    finally:
+        (gc.enable if was else gc.disable)()
+    assert set(seen) == {False}

@@ -49,6 +49,7 @@ def test_beyond_the_last_reading_it_goes_on_as_over_the_last_octave() -> None:
     for size, cost in ((10, 7.0), (20, 9.0), (30, 12.0), (38, 99.0), (40, 18.0)):
         growth.add(size, cost)
     assert growth.log_value({"n": 80}) == pytest.approx(math.log(36))
+    assert math.log(18) < growth.log_value({"n": 39}) < math.log(99)
     narrow = YardstickGrowth()
     for size, cost in ((30, 3.0), (36, 99.0), (40, 4.0)):
         narrow.add(size, cost)
