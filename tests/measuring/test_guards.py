@@ -15,8 +15,9 @@ needs_timer = pytest.mark.skipif(not hasattr(signal, "setitimer"), reason="this 
 
 
 def forever() -> None:
-    while True:
+    for _ in range(5_000):
         time.sleep(0.001)
+    pytest.fail("nothing interrupted it")
 
 
 @needs_timer
@@ -28,6 +29,18 @@ def test_a_guarded_call_is_interrupted() -> None:
             forever()
     assert signal.getsignal(signal.SIGALRM) is signal.SIG_DFL
     assert signal.getitimer(signal.ITIMER_REAL) == (0.0, 0.0)
+
+
+@needs_timer
+def test_a_call_is_interrupted_once() -> None:
+    """What cleans up after it is left in peace, though the timer goes on."""
+    watch = Watch(0.01)
+    with watch.start():
+        watch.guard()
+        with pytest.raises(Overrun):
+            forever()
+        time.sleep(3 * REPEAT)
+        watch.release()
 
 
 @needs_timer
@@ -162,7 +175,9 @@ def test_a_timer_of_someone_else_is_left_alone() -> None:
         watch = Watch(0.01)
         assert not watch.usable
         with watch.start():
+            watch.allow(1e9)
             watch.guard()
+            assert signal.getitimer(signal.ITIMER_REAL)[0] > 50
             time.sleep(0.05)
         assert signal.getitimer(signal.ITIMER_REAL)[0] > 50
     finally:

@@ -8,6 +8,7 @@ import math
 import socket
 from collections.abc import Callable
 from dataclasses import asdict
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -161,3 +162,25 @@ def test_the_collection_of_garbage_is_left_as_it_was(collecting: bool) -> None:
     finally:
         (gc.enable if was else gc.disable)()
     assert set(seen) == {False}
+
+
+def test_the_resident_size_is_where_the_inflation_passes_a_fifth() -> None:
+    """Interpolated between the two footprints about it, in logs."""
+    curve = curve_of([64, 256, 1024], [[1.0, 1.1, 1.3]])
+    share = (math.log(1.2) - math.log(1.1)) / (math.log(1.3) - math.log(1.1))
+    assert curve.resident == pytest.approx(256 * 4**share)
+    assert curve_of([64, 256, 1024], [[1.0, 1.1, 1.19]]).resident == pytest.approx(1024)
+
+
+def test_the_machine_is_known_by_its_processor_and_its_caches(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
+    """A curve that was kept is not taken over by another machine."""
+    (tmp_path / "proc").mkdir()
+    (tmp_path / "proc" / "cpuinfo").write_text("processor\t: 0\nmodel name\t: Fast 5: revised\nstepping\t: 6\n")
+    for index, (level, size) in enumerate((("1", "32K\n"), ("", ""), ("2", "2048K\n"))):
+        place = tmp_path / "sys" / "devices" / "system" / "cpu" / "cpu0" / "cache" / f"index{index}"
+        place.mkdir(parents=True)
+        if level:
+            (place / "level").write_text(level)
+            (place / "size").write_text(size)
+    monkeypatch.setattr(kernels, "Path", lambda text: tmp_path / text.lstrip("/"))
+    assert ", Fast 5: revised, L1 32K, L2 2048K, " in machine_key()
