@@ -57,12 +57,7 @@ def judge(
         )
     variable = bound.variables[0] if bound.variables else "n"
     series = read_series(sizes, costs)
-    promise = Promise(
-        log_growth=bound.along({variable: 1.0}, {}),
-        exponential=bound.exponential,
-        slack=slack,
-        confidence=confidence,
-    )
+    promise = Promise(log_growth=bound.along({variable: 1.0}, {}), exponential=bound.exponential)
     for size in series.sizes:
         if not math.isfinite(promise.log_growth(size)):
             raise ReadingsError(f"the budget {bound.text!r} allows nothing at n = {size}. Leave that size out.")

@@ -215,7 +215,7 @@ def test_where_time_left_no_first_set_it_is_unmeasured() -> None:
     def workloads(repeat: int) -> list[list[float]]:
         return [[n * n for n in SIZES]]
 
-    for read, said in ((0, "no size"), (3, "only 3 sizes")):
+    for read, said in ((0, "no size"), (1, "only 1 size"), (3, "only 3 sizes")):
         found, _ = decided(SIZES, workloads, GROWTHS["n"], first=read)
         assert found.verdict == "unmeasured"
         assert found.reason == (

@@ -84,6 +84,24 @@ def test_many_executions_of_no_weight_do_not_hide_the_work_in_calls() -> None:
     assert [(line.kind, line.place[1]) for line in found] == [("takes", 3)]
 
 
+def test_of_lines_that_take_longer_the_one_that_took_most_comes_first() -> None:
+    found = named(
+        {
+            2: (lambda n: n, lambda n: 20.0 * n),
+            3: (lambda n: n, lambda n: 60.0 * n),
+            4: (lambda n: n, lambda n: 40.0 * n),
+        },
+        allowed=lambda n: n,
+    )
+    assert [(line.kind, line.place[1]) for line in found] == [("takes", 3), ("takes", 4), ("takes", 2)]
+
+
+def test_an_excess_too_small_for_two_runs_to_tell_is_not_named_however_far_apart_they_are() -> None:
+    lines: dict[int, tuple[Cost, Cost]] = {2: (lambda n: n**1.08, constant(100)), 3: (lambda n: n, lambda n: n**0.08)}
+    small, large = at(100, lines, 500.0), at(10_000, lines, 500.0)
+    assert grown(small, large, cost=100**1.08, allowed=100.0, overhead=500.0) == []
+
+
 def test_growth_that_the_budget_allows_is_not_named() -> None:
     assert named({2: (lambda n: n * n, constant(100))}, allowed=lambda n: n * n) == []
     assert named({2: (lambda n: n, lambda n: 30.0 * n)}, allowed=lambda n: n * n) == []

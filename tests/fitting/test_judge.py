@@ -8,6 +8,7 @@ from typing import Any
 import numpy as np
 import pytest
 
+from pytest_growthbudget.bounds.budget import parse_budget
 from pytest_growthbudget.bounds.language import BoundError
 from pytest_growthbudget.fitting.judge import NO_MEMORY, ReadingsError, judge
 
@@ -54,6 +55,43 @@ def test_the_judgement_has_its_figures() -> None:
     assert [row.size for row in found.sizes] == SIZES
     assert found.forecast[0].cost.estimate > found.forecast[0].allowed
     assert found.reason.startswith("over n = 100 to 9050 the excess is at least 0.")
+
+
+def test_the_judgement_says_what_it_was_held_to() -> None:
+    found = judge(SIZES, [3.0 * n for n in SIZES], "T(m) = 2 T(m/2) + m", slack=0.2, confidence=0.9)
+    assert (found.bound, found.theta, found.variable) == ("T(m) = 2 T(m/2) + m", "m log m", "m")
+    assert found.theorem == "Master theorem, case 2"
+    assert found.steps[-1] == "T(m) = Θ(m log m)"
+    assert (found.meter, found.unit) == ("the given cost", "")
+    assert (found.slack, found.confidence) == (0.2, 0.9)
+    ahead = [allows / row.cost for allows, row in zip(found.allowed, found.sizes, strict=True)]
+    assert ahead == sorted(ahead)
+    assert max(ahead) == pytest.approx(1, rel=0.1)
+    assert judge(SIZES, [3.0] * len(SIZES), "1").variable == "n"
+
+
+def test_reasons_are_whole_sentences() -> None:
+    over = "over n = 100 to 9050 the excess"
+    assert judge(SIZES, costs(1.0)[:, 0], "n").reason == f"{over} is below the limit of 0.30"
+    assert judge(SIZES, [float(n) ** 2 for n in SIZES], "n").reason == (
+        f"{over} is at least 1.00, above the slack of 0.15"
+    )
+
+
+def test_a_budget_that_was_parsed_before_is_judged_alike() -> None:
+    given = costs(1.3)[:, 0]
+    assert judge(SIZES, given, parse_budget("n log n")) == judge(SIZES, given, "n log n")
+
+
+def test_five_sizes_without_any_slack_can_be_judged() -> None:
+    assert judge(SIZES[:5], [float(n) ** 2 for n in SIZES[:5]], "n", slack=0.0).verdict == "exceeded"
+
+
+def test_an_excess_of_an_exponential_budget_is_a_power_of_it() -> None:
+    sizes = list(range(8, 24))
+    found = judge(sizes, [3.0**n for n in sizes], "2^n")
+    assert found.excess is not None
+    assert found.excess.estimate == pytest.approx(math.log(3) / math.log(2) - 1, abs=0.01)
 
 
 def test_shapes_are_alike() -> None:
@@ -123,6 +161,8 @@ FIVE = [1, 2, 3, 4, 5]
         (FIVE, 7, {}, "costs must be a list of numbers, not 7."),
         (np.ones((5, 1)), FIVE, {}, "sizes has 2 dimensions"),
         (FIVE, np.ones((5, 1, 1)), {}, "costs has 3 dimensions"),
+        (["1", 2, 3, 4, 5], FIVE, {}, "the size at position 0 is '1', which is not a number."),
+        (FIVE, FIVE, {"confidence": 0.0}, "confidence must lie between 0 and 1, not at 0.0."),
         (FIVE, FIVE, {"confidence": 1.0}, "confidence must lie between 0 and 1, not at 1.0."),
         (FIVE, FIVE, {"slack": -0.1}, "slack must be a number of at least 0, not -0.1."),
         (FIVE, FIVE, {"slack": math.nan}, "slack must be a number of at least 0, not nan."),
@@ -136,8 +176,12 @@ def test_faults_are_said_in_a_sentence(sizes: Any, given: Any, options: dict[str
 
 
 def test_several_variables_are_refused() -> None:
-    with pytest.raises(ReadingsError, match=r"has several variables \(E, V\)"):
+    with pytest.raises(ReadingsError) as caught:
         judge(FIVE, FIVE, "V + E")
+    assert str(caught.value) == (
+        "the budget 'V + E' has several variables (E, V), but there is one number a size. "
+        "State the bound in one variable."
+    )
 
 
 def test_a_bad_bound_is_the_bounds_own_error() -> None:

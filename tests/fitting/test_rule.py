@@ -155,7 +155,8 @@ def test_exponential_budgets() -> None:
     def held(base: float, budget: float) -> str:
         case = Formula(lambda n: 60.0 * base**n, sizes=sizes, bytes_each=100.0)
         found = case.decide(lambda n: n * math.log(budget), exponential=True)
-        assert found.exponent is None
+        assert found.exponent is found.nearest is None
+        assert found.forecast[0].size == found.sizes[-1].size + 5
         return found.verdict
 
     assert Formula(lambda n: 60.0 * 3.0**n, sizes=sizes).decide(
@@ -164,6 +165,16 @@ def test_exponential_budgets() -> None:
     assert held(2.0, 2.0) == "within"
     assert held(1.6, 2.0) == "within"
     assert held(2.0, 1.5) == "exceeded"
+
+
+def test_the_excess_over_a_flat_budget_is_said_of_the_largest_size() -> None:
+    """A line that makes up a thirtieth of the cost: its own exponent is one, that of the whole cost next to nothing."""
+    found = Formula(lambda n: 1e6 + n, most=30).decide(BUDGETS["1"])
+    assert found.verdict == "within"
+    assert found.excess is not None
+    assert found.exponent is not None
+    assert found.excess.high < 0.1
+    assert found.exponent.high < 0.1
 
 
 def test_an_exponential_body_is_named_and_foretold_as_one() -> None:
@@ -187,6 +198,7 @@ def test_too_few_sizes_are_unmeasured_with_the_way_to_mend_it(ended: str, mend: 
     case = Formula(lambda n: 1e5 * n * n, most=4, ended=ended)
     found = case.decide(BUDGETS["n"])
     assert found.verdict == "unmeasured"
+    assert found.stage == "A"
     assert found.reason.startswith("only 4 sizes could be read where 5 are needed: ")
     assert mend in found.reason
     assert case.of(Rounds) == []
