@@ -83,7 +83,7 @@ def test_sizes_are_filled_in_as_far_as_time_allows() -> None:
 
 def test_sizes_are_filled_in_before_any_was_read() -> None:
     """A rule asks for rounds by place on the ladder: a later climb adds at the top alone, however few sizes it has."""
-    campaign = Bench(lambda n: 100.0 * n).campaign(smallest=2000, largest=60_000)
+    campaign = Bench(lambda n: 100.0 * n).campaign(smallest=3000, largest=80_000)
     low, high = campaign.run(asks(Climb(5 * MS), Climb(30 * MS)))
     assert high.ended == "largest"
     assert high.sizes[: len(low.sizes)] == low.sizes
