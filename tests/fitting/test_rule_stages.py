@@ -134,14 +134,13 @@ def test_the_look_ahead_tolerates_growth_up_to_the_limit(exponent: float, stage:
 
 
 def test_what_the_look_ahead_saw_is_not_forgotten_at_stage_b() -> None:
-    """All sizes up to 32 ms taken together would pass."""
+    """A square that begins where calls take 10 ms: all sizes up to 32 ms taken together would pass for a line."""
 
     def cost(n: float) -> float:
-        return 100.0 * n * max(1.0, n / 6e4) ** 0.8
+        return 100.0 * n * max(1.0, n / 1e5)
 
-    case = Formula(cost, noise=0.001, bytes_each=24.0, curve=FLAT_CURVE)
-    found = case.decide(BUDGETS["n"])
-    assert (found.verdict, found.stage) == ("undecided", "C")
+    found = Formula(cost, noise=0.001, bytes_each=1.0).decide(BUDGETS["n"])
+    assert (found.verdict, found.stage) == ("exceeded", "C")
 
 
 def scattered(n: float) -> float:
