@@ -6,7 +6,7 @@ from collections.abc import Callable
 
 import pytest
 
-from pytest_growthbudget.measuring.readings import Rounds
+from pytest_growthbudget.measuring.readings import Rounds, Series
 from tests.fitting.campaigns import BUDGETS, FLAT_CURVE, STEEP_CURVE, Formula
 
 
@@ -91,6 +91,19 @@ def test_the_climb_is_asked_about_the_readable_sizes_only() -> None:
 def test_time_that_ran_out_on_a_suspicious_body() -> None:
     found = cut(lambda n: 100.0 * n**1.08).decide(BUDGETS["n"])
     assert (found.verdict, found.bends_at) == ("undecided", None)
+
+
+def test_time_that_ran_out_after_three_sizes() -> None:
+    class Hurried(Formula):
+        def take(self, request: Rounds) -> Series:
+            series = super().take(request)
+            return Series(sizes=series.sizes[:3], costs=series.costs[:3], complete=False)
+
+    found = Hurried(linear(100.0)).decide(BUDGETS["n"])
+    assert (found.verdict, len(found.sizes)) == ("unmeasured", 3)
+    assert found.reason == (
+        "only 3 sizes could be read where 5 are needed: the time limit ended the readings; raise `time_limit`"
+    )
 
 
 def test_nine_sizes_read_three_times_are_enough_when_time_ran_out() -> None:
