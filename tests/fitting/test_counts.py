@@ -97,11 +97,12 @@ def test_exact_counts(cost, budget: str, verdict: str) -> None:  # type: ignore[
     assert found.confirmed is (True if verdict == "exceeded" else None)
 
 
-def test_counts_that_fall_towards_their_budget_and_keep_to_it_are_not_exceeded() -> None:
-    """KiB at the peak of numpy's distances between n points: small arrays take twice as much for each pair."""
+@pytest.mark.parametrize("unit", [1, 1024])
+def test_counts_that_fall_towards_their_budget_and_keep_to_it_are_not_exceeded(unit: int) -> None:
+    """The peak of numpy's distances between n points, in KiB or bytes: small arrays take twice as much for a pair."""
     peak = {50: 119, 60: 170, 71: 207, 84: 238, 100: 283, 119: 349, 141: 468, 168: 663, 200: 939, 238: 1331}
     peak |= {283: 1874, 336: 2652, 400: 3748, 447: 4680, 500: 5857}
-    found, _ = decided(peak, lambda repeat: [list(peak.values())], GROWTHS["n2"])
+    found, _ = decided(peak, lambda repeat: [[unit * held for held in peak.values()]], GROWTHS["n2"])
     assert found.verdict != "exceeded"
 
 

@@ -265,8 +265,9 @@ def test_time_that_ran_out_on_a_sound_body() -> None:
     assert "raise `time_limit`" in found.reason
 
 
-def test_time_that_ran_out_before_any_round() -> None:
-    found = Formula(lambda n: 100.0 * n, rounds=0).decide(BUDGETS["n"])
+@pytest.mark.parametrize("most", [5, 48])
+def test_time_that_ran_out_before_any_round(most: int) -> None:
+    found = Formula(lambda n: 100.0 * n, rounds=0, most=most).decide(BUDGETS["n"])
     assert (found.verdict, found.sizes) == ("unmeasured", ())
     assert found.reason == (
         "no size could be read where 5 are needed: the time limit ended the readings; raise `time_limit`"

@@ -8,7 +8,9 @@ from dataclasses import asdict, replace
 import numpy as np
 import pytest
 
+from pytest_growthbudget.fitting import reasons
 from pytest_growthbudget.fitting.evidence import Evidence, assemble
+from pytest_growthbudget.fitting.judgement import Interval
 from pytest_growthbudget.fitting.verdict import (
     Says,
     clock_limits,
@@ -216,3 +218,10 @@ def test_few_sizes_must_show_a_threefold_rise(count: int) -> None:
 
 def test_fewer_than_five_sizes_say_nothing() -> None:
     assert says(evidence(lambda n: n**4, sizes=SIZES[:4])) is Says.NO
+
+
+def test_a_bound_of_next_to_nothing_is_said_without_a_sign() -> None:
+    said = reasons.wide(evidence(lambda n: n), Interval(estimate=0.0, low=-0.004, high=0.3149), LIMITS)
+    assert said == (
+        "over n = 12 to 4344 the excess lies between 0.00 and 0.31: neither surely above 0.15 nor surely below 0.30"
+    )
