@@ -11,7 +11,7 @@ Where the parts are:
 - the last ten sizes alone: `_Clock.windows`;
 - the wider limit on a hidden term: `Limits.within_hidden`; flat budgets: `verdict.is_flat`;
 - within on deflated costs: `_Clock.believed_within`; suspicion: the same, and at the end of `_Clock.stage_a`;
-- the look ahead: `_Clock.looks_ahead_well`; stage C: `_Clock.stage_c`; time that ran out: `_Clock.cut_short`;
+- the look ahead: `_Clock.looks_ahead`; stage C: `_Clock.stage_c`; time that ran out: `_Clock.cut_short`;
 - exponential budgets, by their own log as regressor: `excess.observe`; the ladder itself: `measuring.campaign`.
 """
 
