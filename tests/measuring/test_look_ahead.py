@@ -137,9 +137,9 @@ def with_time_left(bench: Bench, left: float) -> object:
 
 
 def test_no_look_ahead_that_does_not_fit_the_time() -> None:
-    """Two calls of 60 ms, and room for a third."""
-    assert with_time_left(Bench(lambda n: 100.0 * n), 150 * MS) is None
-    assert with_time_left(Bench(lambda n: 100.0 * n), 300 * MS) is not None
+    """Three calls at twice the largest size, which took 5 ms, take 30 ms."""
+    assert with_time_left(Bench(lambda n: 100.0 * n), 20 * MS) is None
+    assert with_time_left(Bench(lambda n: 100.0 * n), 35 * MS) is not None
 
 
 def test_one_call_is_enough_where_it_took_most_of_the_time_left() -> None:
