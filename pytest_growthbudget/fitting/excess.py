@@ -216,7 +216,7 @@ class Lines:
 
     def weights(self, *, with_growth: bool = False) -> Array:
         """Posterior weights, (r, k), with or without the rows that subtract a multiple of the growth."""
-        return _normalised(self.log_likelihood + np.log(_priors(self.kind, with_growth=with_growth))[:, None])
+        return _normalised(self.log_likelihood + _log_priors(self.kind, with_growth=with_growth)[:, None])
 
 
 def fit_lines(seen: Observations, noise: float = CLOCK_NOISE) -> Lines:
@@ -253,11 +253,10 @@ def fit_lines(seen: Observations, noise: float = CLOCK_NOISE) -> Lines:
     )
 
 
-def _priors(kind: NDArray[np.intp], *, with_growth: bool) -> Array:
+def _log_priors(kind: NDArray[np.intp], *, with_growth: bool) -> Array:
     subtracted = len(_OFFSETS) * (2 if with_growth else 1)
-    each = (1 - _PRIOR_OF_NO_OFFSET) / subtracted
-    never = each if with_growth else np.finfo(float).tiny  # which `pruned` drops
-    return np.choose(kind, (_PRIOR_OF_NO_OFFSET, each, never))
+    each = math.log((1 - _PRIOR_OF_NO_OFFSET) / subtracted)
+    return np.choose(kind, (math.log(_PRIOR_OF_NO_OFFSET), each, each if with_growth else -math.inf))
 
 
 @lru_cache(maxsize=32)

@@ -15,6 +15,7 @@ from pytest_growthbudget.fitting.excess import (
     Mixture,
     Observations,
     fit_excess,
+    fit_lines,
     local_exponent,
     observe,
 )
@@ -168,3 +169,12 @@ def test_the_first_implementation_found_the_same(known, recordings) -> None:  # 
         interval = getattr(found, name).interval()
         assert [interval.low, interval.estimate, interval.high] == pytest.approx(known[name], abs=2e-5)
     assert replayed.costs[cut] == pytest.approx(costs)
+
+
+@pytest.mark.parametrize("count", [12, 400])
+def test_growth_that_may_hide_has_no_part_in_the_plain_excess(count: int) -> None:
+    """However many sizes speak for it: it is weighed on its own."""
+    sizes = np.geomspace(10, 1e6, count)
+    lines = fit_lines(observe(sizes, 100 * sizes + 1e-3 * sizes**2, np.log), noise=0.0003)
+    assert lines.weights()[lines.kind == 2].sum() == 0
+    assert lines.weights(with_growth=True)[lines.kind == 2].sum() > 0.9
