@@ -33,10 +33,6 @@ class _Counter(StepWatch):
         assert self._tally is not None
         return self._tally.read()
 
-    def hush(self) -> None:
-        """Count no more; `end` may still be called."""
-        self._watch.end()
-
 
 class CallWatch:
     """Writes the calls of `target` to `ledger` between `begin` and `end`; with `count`, own work is in steps."""
@@ -76,19 +72,19 @@ class CallWatch:
         _monitoring.set_events(tool, everywhere)
 
     def end(self) -> None:
-        if self._tool < 0:
-            return
-        self._release()
+        if self._tool >= 0:
+            self._release()
         if self.counts:
             self._ledger.read = int
-            self._steps.end()
+            self._steps.let_go()
 
     def _release(self) -> None:
-        tool, self._tool = self._tool, -1
+        tool = self._tool
         _monitoring.set_events(tool, 0)
         _monitoring.set_local_events(tool, self._code, 0)
         for event in ("PY_START", "PY_RETURN", "PY_UNWIND", "PY_YIELD", "PY_RESUME", "PY_THROW"):
             _monitoring.register_callback(tool, getattr(_EVENTS, event), None)
+        self._tool = -1
         _monitoring.free_tool_id(tool)
 
     def _elsewhere(self) -> bool:
@@ -96,7 +92,7 @@ class CallWatch:
 
     def _start(self, code: CodeType, offset: int) -> object:
         if self._ledger.closed:
-            self._steps.hush()
+            self._steps.let_go()
             return _monitoring.DISABLE
         if self._elsewhere():
             return None

@@ -8,6 +8,7 @@ Only the thread of the reading is watched. A call in another thread is not taken
 
 from __future__ import annotations
 
+import contextlib
 import sys
 from collections.abc import Callable
 from typing import Final, Literal
@@ -15,6 +16,7 @@ from typing import Final, Literal
 from pytest_growthbudget.auditing.calls import Ledger
 from pytest_growthbudget.auditing.target import Target
 from pytest_growthbudget.meters import clocks
+from pytest_growthbudget.meters.protocol import MeterError
 
 if sys.version_info >= (3, 12):
     from pytest_growthbudget.auditing.by_monitoring import CallWatch
@@ -56,6 +58,11 @@ class CallMeter:
         finally:
             self.ledger.end()
         return float(len(self.ledger))
+
+    def close(self) -> None:
+        """Let go of the hooks, also where an alarm came in the midst of `start` or `stop`."""
+        with contextlib.suppress(MeterError):
+            self._watch.end()
 
 
 def _clock() -> Callable[[], int]:

@@ -39,8 +39,8 @@ class PeakMemory:
         if gc.isenabled():
             gc.collect()
         if not tracemalloc.is_tracing():
+            self._own = True  # first: `close` stops it also where an alarm comes in between
             tracemalloc.start()
-            self._own = True
         self._notes = () if self._own else (_already_running(),)
         self._before = tracemalloc.get_traced_memory()[0]
         tracemalloc.reset_peak()

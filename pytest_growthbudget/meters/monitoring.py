@@ -33,6 +33,7 @@ assert sys.version_info >= (3, 12)
 _monitoring = sys.monitoring
 _EVENTS = _monitoring.events
 _CANDIDATES = (3, 4, 5, 2, 0)  # 3 and 4 have no meaning of their own; 1 is coverage's
+_NAME = "growth budget"
 _QUICK_LIMIT = 1 << 21
 
 Callback = Callable[..., Any]
@@ -61,19 +62,19 @@ def _stands_on_one_line(code: CodeType) -> bool:
     return {line for _, _, line in code.co_lines() if line is not None} == {code.co_firstlineno}
 
 
-def _claim() -> tuple[int, int]:
-    """Two free tool ids. Raises MeterError, naming the holders, where there are none."""
-    claimed: list[int] = []
+def _claim(held: list[int]) -> None:
+    """Two free tool ids, put into `held` one by one. Raises MeterError, naming the holders, where there are none."""
     for candidate in _CANDIDATES:
+        held.append(candidate)  # first: what an alarm leaves here is given back, if it is ours
         try:
-            _monitoring.use_tool_id(candidate, "growth budget")
+            _monitoring.use_tool_id(candidate, _NAME)
         except ValueError:
-            continue
-        claimed.append(candidate)
-        if len(claimed) == 2:
-            return claimed[0], claimed[1]
-    for taken in claimed:
+            held.pop()
+        if len(held) == 2:
+            return
+    for taken in held:
         _monitoring.free_tool_id(taken)
+    held.clear()
     names = {tool: _monitoring.get_tool(tool) for tool in range(6)}
     holders = ", ".join(f"{tool} ({name})" for tool, name in names.items() if name is not None)
     raise MeterError(
@@ -83,18 +84,23 @@ def _claim() -> tuple[int, int]:
 
 
 class _Watch:
-    """Delivers the events of counted code to callbacks, between `begin` and `end`."""
+    """Delivers the events of counted code to callbacks, between `begin` and `end`.
+
+    A `begin` or `end` that an alarm cuts short is made good by another `end`.
+    """
 
     def __init__(self) -> None:
         self._codes: dict[int, CodeType] = {}
+        self._held: list[int] = []
         self._scout = self._counter = -1
 
     def begin(
         self, events_of: Callable[[CodeType], int], on_line: Callback, on_entry: Callback, on_jump: Callback
     ) -> None:
         """`events_of(code)`: the events that matter in that code object."""
-        self._scout, self._counter = _claim()
         self._events_of, self._on_entry = events_of, on_entry
+        _claim(self._held)
+        self._scout, self._counter = self._held
         register = _monitoring.register_callback
         register(self._counter, _EVENTS.LINE, on_line)
         register(self._counter, _EVENTS.PY_START, on_entry)
@@ -112,17 +118,17 @@ class _Watch:
         _monitoring.set_events(self._scout, _EVENTS.PY_START | _EVENTS.PY_RESUME)
 
     def end(self) -> None:
-        if self._scout < 0:
-            return
-        _monitoring.set_events(self._scout, 0)
-        for code in list(self._codes.values()):
-            _monitoring.set_local_events(self._counter, code, 0)
-        tools = self._scout, self._counter
         self._scout = self._counter = -1
-        for tool in tools:
-            for event in (_EVENTS.LINE, _EVENTS.PY_START, _EVENTS.PY_RESUME, _EVENTS.JUMP):
-                _monitoring.register_callback(tool, event, None)
-            _monitoring.free_tool_id(tool)
+        while self._held:
+            tool = self._held[-1]
+            if _monitoring.get_tool(tool) == _NAME:
+                _monitoring.set_events(tool, 0)
+                for code in list(self._codes.values()):
+                    _monitoring.set_local_events(tool, code, 0)
+                for event in (_EVENTS.LINE, _EVENTS.PY_START, _EVENTS.PY_RESUME, _EVENTS.JUMP):
+                    _monitoring.register_callback(tool, event, None)
+                _monitoring.free_tool_id(tool)
+            self._held.pop()
         self._codes.clear()
 
     def _adopt(self, code: CodeType) -> int:
@@ -179,6 +185,9 @@ class StepWatch:
         assert self._tally is not None
         self._last, self._tally = self._tally.read(), None
         return self._last
+
+    def let_go(self) -> None:
+        self._watch.end()
 
     @staticmethod
     def _events_of(code: CodeType) -> int:

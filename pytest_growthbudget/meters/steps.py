@@ -44,6 +44,10 @@ class Steps:
     def stop(self) -> float:
         return float(self._watch.end())
 
+    def close(self) -> None:
+        """Let go of the hooks, also where an alarm came in the midst of `start` or `stop`."""
+        self._watch.let_go()
+
 
 def count_lines(body: Callable[[], object]) -> dict[tuple[str, int], int]:
     """How often each line ran in one call of `body` and all it calls: (file name, line number) -> executions.
@@ -52,8 +56,8 @@ def count_lines(body: Callable[[], object]) -> dict[tuple[str, int], int]:
     interpreter's tracing is taken, and whatever `body` raises.
     """
     watch = LineWatch()
-    watch.begin()
     try:
+        watch.begin()
         body()
     except BaseException:
         with contextlib.suppress(MeterError):

@@ -36,9 +36,9 @@ class _Watch:
                 f"{_described(holder)} holds it. Run this test without coverage or a debugger, use Python 3.12 "
                 "or later, where both can count at once, or choose another meter."
             )
-        self._new = new
         self._hook = threading.gettrace()
         self._frames: list[tuple[FrameType, Any]] = []
+        self._new = new
         frame: FrameType | None = sys._getframe()
         while frame is not None:
             if counted(frame.f_code.co_filename):
@@ -121,6 +121,9 @@ class StepWatch:
         steps = self._finish()
         _check(ours)
         return steps
+
+    def let_go(self) -> None:
+        self._watch.end()
 
 
 class LineWatch:

@@ -63,6 +63,9 @@ def audit_test(item: GrowthItem, plan: Plan, judgement: Judgement, forget: Calla
                 repeat(timed, at_the_top)
             except Overrun:
                 notes = (cut,)
+            finally:
+                steps.close()
+                timed.close()
         budget = plan.budget if isinstance(plan.budget, Budget) else None
         audit = assess(target, steps, timed, budget)
     except (MeterError, TargetError) as error:

@@ -156,3 +156,40 @@ def taken(*tools):
     finally:
         for tool in tools:
             sys.monitoring.free_tool_id(tool)
+
+
+class Alarm(BaseException):
+    """Comes at any moment, as the time limit of a body does."""
+
+
+@pytest.mark.parametrize("call", range(1, 60))
+def test_an_alarm_in_the_midst_of_a_start_or_stop_leaves_no_hook_behind(call: int) -> None:
+    """An exception at the n-th C call or line of the two: whatever had been taken is given back by `close`."""
+    meter, left = Steps(), call
+
+    def alarm(frame, event, arg):
+        nonlocal left
+        if frame.f_code.co_filename.endswith(("monitoring.py", "tracing.py")) and event == "c_call":
+            left -= 1
+            if left == 0:
+                raise Alarm
+
+    before = hooks()
+    sys.setprofile(alarm)
+    try:
+        meter.start()
+        meter.stop()
+    except Alarm:
+        pass
+    finally:
+        sys.setprofile(None)
+    meter.close()
+    assert hooks() == before
+    assert steps(lambda: unloaded(10)) == 26
+    assert hooks() == before
+
+
+def hooks() -> object:
+    if MONITORING:
+        return [sys.monitoring.get_tool(tool) for tool in range(6) if tool != sys.monitoring.PROFILER_ID]
+    return sys.gettrace(), threading.gettrace()
