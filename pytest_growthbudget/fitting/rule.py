@@ -116,14 +116,27 @@ class _Clock:
             kept = self.within()
             if ahead <= limits.look_on:
                 return kept
-            # Tolerated, though a steeper term may be coming up behind: dearer sizes would tell, and only they accuse.
-            for stage in (self.stage_b, self.stage_c):
-                found = yield from stage()
-                if found is not None and found.verdict == "exceeded":
-                    return found
-            return kept
+            return (yield from self.looks_on()) or kept
         self.ahead = True
         return None
+
+    def looks_on(self) -> Asking:
+        """Dearer sizes that the caches hold as well: a steeper term may be coming up behind what was read.
+
+        They may accuse, and say nothing else. Past the caches a tolerated excess is too often that of the memory.
+        """
+        run, read = self.run, self.last
+        yield from run.climb(Climb(STAGE_C_COST, RESIDENT))
+        middle = max(read, run.count(cost=STAGE_B_COST, footprint=RESIDENT))
+        self.last = max(middle, run.count(cost=STAGE_C_COST, footprint=RESIDENT))
+        if self.last == read:
+            return None
+        self.stage = "B" if self.last == middle else "C"
+        rounds = [Rounds(self.first, middle)]
+        if self.last > middle:
+            rounds.append(Rounds(middle, self.last, calls=STAGE_C_CALLS))
+        found = yield from self.examine(rounds, top=True)
+        return found if found is not None and found.verdict == "exceeded" else None
 
     def stage_b(self) -> Asking:
         """Every size up to 32 ms."""
