@@ -11,20 +11,7 @@ from xml.etree import ElementTree
 
 import pytest
 
-CONFTEST = """
-    import pytest
-
-    @pytest.fixture
-    def numbers(problem_size, workload_rng):
-        return [workload_rng.random() for _ in range(problem_size)]
-"""
-
-
-@pytest.fixture
-def suite(pytester: pytest.Pytester) -> pytest.Pytester:
-    pytester.makeconftest(CONFTEST)
-    return pytester
-
+from tests.suites import NUMBERS
 
 #: The second test is interrupted in its second budget, the first of which is judged by then.
 INTERRUPTED = """
@@ -167,7 +154,7 @@ def test_a_limit_that_is_none_is_refused(suite: pytest.Pytester) -> None:
 @pytest.mark.parametrize("junit", [False, True], ids=["terminal", "junit"])
 def test_properties(suite: pytest.Pytester, extra: tuple[str, ...], junit: bool) -> None:
     suite.makeconftest(
-        CONFTEST
+        NUMBERS
         + """
     def pytest_runtest_logreport(report):
         if report.when == "call":

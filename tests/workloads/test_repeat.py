@@ -4,20 +4,6 @@ from __future__ import annotations
 
 import pytest
 
-CONFTEST = """
-    import pytest
-
-    @pytest.fixture
-    def numbers(problem_size, workload_rng):
-        return [workload_rng.random() for _ in range(problem_size)]
-"""
-
-
-@pytest.fixture
-def suite(pytester: pytest.Pytester) -> pytest.Pytester:
-    pytester.makeconftest(CONFTEST)
-    return pytester
-
 
 def test_one_item_a_test(suite: pytest.Pytester) -> None:
     suite.makepyfile(

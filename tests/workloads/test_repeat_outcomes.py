@@ -6,20 +6,6 @@ import re
 
 import pytest
 
-CONFTEST = """
-    import pytest
-
-    @pytest.fixture
-    def numbers(problem_size, workload_rng):
-        return [workload_rng.random() for _ in range(problem_size)]
-"""
-
-
-@pytest.fixture
-def suite(pytester: pytest.Pytester) -> pytest.Pytester:
-    pytester.makeconftest(CONFTEST)
-    return pytester
-
 
 def test_skips_and_expected_failures(suite: pytest.Pytester) -> None:
     suite.makepyfile(
