@@ -21,7 +21,7 @@ from pytest_growthbudget.bounds.growth import CONSTANT, Factor, monomial
 from pytest_growthbudget.bounds.language import BoundError
 from pytest_growthbudget.bounds.printing import show_monomial
 from pytest_growthbudget.bounds.recurrence import Argument, Decrease, Ratio, Recurrence, Shrink
-from pytest_growthbudget.fitting.judgement import Interval
+from pytest_growthbudget.fitting.judgement import Interval, two_places
 
 About = Literal["subproblems", "argument", "toll", "overlap"]
 
@@ -182,7 +182,7 @@ def _toll(recurrence: Recurrence, toll: Toll | None, excess: Interval | None) ->
         return Check(about="toll", declared=declared, found="too few sizes to tell", agrees=None)
     low, high = toll.exponent.low, toll.exponent.high
     unit = "time" if toll.unit == "ns" else toll.unit
-    power = f"{recurrence.variable}^{round(toll.exponent.estimate, 2) + 0.0:.2f}"
+    power = f"{recurrence.variable}^{two_places(toll.exponent.estimate)}"
     found = f"own work ({unit}) grows as {power} (95 % {low:.2f} to {high:.2f})"
     if toll.hidden:
         found += ", which steps do not show"

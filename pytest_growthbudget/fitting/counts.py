@@ -5,8 +5,6 @@ from __future__ import annotations
 from collections.abc import Generator
 from typing import Final
 
-import numpy as np
-
 from pytest_growthbudget.fitting import reasons
 from pytest_growthbudget.fitting.evidence import Evidence
 from pytest_growthbudget.fitting.excess import COUNTER_NOISE, FEWEST_SIZES, Observations
@@ -66,7 +64,7 @@ def _runs_ahead(seen: Observations, limit: float) -> bool:
     A cost that falls towards its budget and then keeps to it (an array that needs buffers while it is small) bends as
     a constant beside a steeper power would, and the model takes it for that.
     """
-    ahead = np.log(seen.costs) - seen.log_growth
+    ahead = seen.ahead
     lowest = int(ahead.argmin())
     span = seen.regressor[-1] - seen.regressor[lowest]
     return bool(ahead[-1] - ahead[lowest] > limit / 2 * span)

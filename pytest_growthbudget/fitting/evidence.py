@@ -62,7 +62,7 @@ class Evidence:
 
     def unit_cost(self) -> float:
         """The smallest cost per unit of the growth allowed."""
-        return float(np.exp((np.log(self.seen.costs) - self.seen.log_growth).min()))
+        return float(np.exp(self.seen.ahead.min()))
 
     def window(self, first: int, last: int) -> Evidence:
         """The same between two indices; the allowance stays that of the whole."""

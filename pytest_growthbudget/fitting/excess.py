@@ -67,6 +67,11 @@ class Observations:
         """The local exponent of the growth at the largest size."""
         return float(self.gammas[-1])
 
+    @property
+    def ahead(self) -> Array:
+        """Log cost over the growth: a budget that is kept leaves it level."""
+        return np.log(self.costs) - self.log_growth
+
     def window(self, first: int, last: int) -> Observations:
         """The same between two indices, `first` ≤ i < `last`."""
         cut = slice(first, last)
@@ -224,7 +229,7 @@ def fit_lines(seen: Observations, noise: float = CLOCK_NOISE) -> Lines:
     whiten, log_det = _whitening(tuple(seen.regressor.tolist()))
     costs, log_growth = seen.costs, seen.log_growth
     # Only ratios of the growth matter; in logs, exponential budgets neither overflow nor vanish.
-    multiple = np.exp(log_growth + (np.log(costs) - log_growth).min())
+    multiple = np.exp(log_growth + seen.ahead.min())
     offsets = _OFFSETS[:, None]
     left = np.concatenate((costs[None], costs - offsets * costs.min(), costs - offsets * multiple))
     weight = left / costs

@@ -116,7 +116,7 @@ def allowed_cost(seen: Observations, log_growth: LogGrowth, size: float) -> floa
 
 
 def _scale(seen: Observations) -> float:
-    return float(_smooth(np.log(seen.costs) - seen.log_growth).min())
+    return float(_smooth(seen.ahead).min())
 
 
 def forecast_sizes(largest: int, *, exponential: bool) -> tuple[int, ...]:
@@ -146,7 +146,7 @@ def bends_at(seen: Observations) -> int | None:
 
     None where it never is, or not to the end.
     """
-    ahead = _smooth(np.log(seen.costs) - seen.log_growth)
+    ahead = _smooth(seen.ahead)
     above = ahead - ahead.min() > AHEAD
     above[: int(ahead.argmin()) + 1] = False
     if not above[-1]:

@@ -8,6 +8,11 @@ from typing import Literal
 VerdictName = Literal["within", "exceeded", "undecided", "unmeasured"]
 
 
+def two_places(value: float) -> str:
+    """`value` as exponents are printed; what rounds to nothing has no sign."""
+    return f"{round(value, 2) + 0.0:.2f}"
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Interval:
     """An estimate and the ends of its interval, at the confidence that the judgement names."""

@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import Final
 
 from pytest_growthbudget.fitting.evidence import Evidence
-from pytest_growthbudget.fitting.judgement import Interval
+from pytest_growthbudget.fitting.judgement import Interval, two_places
 from pytest_growthbudget.fitting.verdict import Limits
 
 UNCONFIRMED: Final = "one set of readings is above the slack, and a second set did not agree"
@@ -39,10 +39,6 @@ def over(evidence: Evidence) -> str:
     return f"n = {evidence.seen.sizes[0]:.0f} to {evidence.seen.sizes[-1]:.0f}"
 
 
-def _two(value: float) -> str:
-    return f"{round(value, 2) + 0.0:.2f}"  # no -0.00
-
-
 def within(evidence: Evidence, limits: Limits, *, deflated: bool = False) -> str:
     memory = ", once memory is allowed for," if deflated else ""
     return f"over {over(evidence)} the excess{memory} is below the limit of {limits.within:.2f}"
@@ -56,16 +52,16 @@ def exceeded(evidence: Evidence, excess: Interval, limits: Limits, *, agreed: st
     """`excess`: the interval that decided; `deflated`: memory had been allowed for in it."""
     memory = ", once memory is allowed for" if deflated else ""
     return (
-        f"over {over(evidence)} the excess is at least {_two(excess.low)}{memory}, "
+        f"over {over(evidence)} the excess is at least {two_places(excess.low)}{memory}, "
         f"above the slack of {limits.exceeded:.2f}{agreed}"
     )
 
 
 def wide(evidence: Evidence, excess: Interval, limits: Limits, memory: Interval | None = None) -> str:
     """Why an interval does not decide. `memory`: the excess that is left once memory is allowed for, if it was."""
-    between = f"over {over(evidence)} the excess lies between {_two(excess.low)} and {_two(excess.high)}"
+    between = f"over {over(evidence)} the excess lies between {two_places(excess.low)} and {two_places(excess.high)}"
     if memory is not None:
-        between += f", or {_two(memory.low)} and {_two(memory.high)} once memory is allowed for"
+        between += f", or {two_places(memory.low)} and {two_places(memory.high)} once memory is allowed for"
     if excess.low > limits.exceeded and memory is None:
         return f"{between}, but has not risen far enough to be told from a single step among so few sizes"
     return f"{between}: neither surely above {limits.exceeded:.2f} nor surely below {limits.within:.2f}"

@@ -21,8 +21,6 @@ from collections.abc import Callable, Generator
 from dataclasses import dataclass
 from typing import Final
 
-import numpy as np
-
 from pytest_growthbudget.fitting import reasons
 from pytest_growthbudget.fitting.counts import decide_counts
 from pytest_growthbudget.fitting.evidence import Evidence
@@ -240,8 +238,7 @@ class _Clock:
             return 0.0
         joined = run.joined(evidence, peeked)
         before = slice(-1 - AHEAD_SIZES, -1)
-        height = np.log(joined.seen.costs) - joined.seen.log_growth
-        rise = float(height[-1] - height[before].mean())
+        rise = float(joined.seen.ahead[-1] - joined.seen.ahead[before].mean())
         distance = float(joined.seen.regressor[-1] - joined.seen.regressor[before].mean())
         if rise > self.limits.look_on * distance and joined.allowed is not None:
             rise -= float(joined.allowed[-1] - joined.allowed[before].mean())

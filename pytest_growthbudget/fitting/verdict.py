@@ -190,8 +190,7 @@ def rises_enough(deflated: Observations) -> bool:
 
 def rise(seen: Observations) -> float:
     """By how much, in logs, the cost has run ahead of the growth allowed from the first size to the last."""
-    ahead = np.log(seen.costs) - seen.log_growth
-    return float(ahead[-1] - ahead[0])
+    return float(seen.ahead[-1] - seen.ahead[0])
 
 
 def is_cheap(evidence: Evidence, curve: MemoryCurve) -> bool:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import textwrap
 from typing import Any
 
+from pytest_growthbudget.fitting.judgement import two_places
 from pytest_growthbudget.reporting import units
 
 WIDTH = 80
@@ -126,7 +127,7 @@ def _facts(audit: dict[str, Any]) -> list[str]:
         lines.append(
             _fact(
                 "own work",
-                f"{unit} grow{'s' if unit == 'time' else ''} as n^{round(exponent['estimate'], 2) + 0.0:.2f} "
+                f"{unit} grow{'s' if unit == 'time' else ''} as n^{two_places(exponent['estimate'])} "
                 f"(95 % {exponent['low']:.2f} to {exponent['high']:.2f}){hidden}",
             )
         )

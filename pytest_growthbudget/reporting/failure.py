@@ -6,6 +6,7 @@ import math
 import textwrap
 from typing import Any
 
+from pytest_growthbudget.fitting.judgement import two_places
 from pytest_growthbudget.reporting import audit, lines, risen, units
 
 WIDTH = 80
@@ -21,7 +22,7 @@ def fails(judgement: dict[str, Any]) -> bool:
 
 def power(exponent: float, variable: str = "n") -> str:
     """A measured exponent as a growth: `n^1.97`."""
-    return f"{variable}^{round(exponent, 2) + 0.0:.2f}"  # no -0.00
+    return f"{variable}^{two_places(exponent)}"
 
 
 def first_line(judgement: dict[str, Any]) -> str:
